@@ -1,0 +1,1 @@
+//! What is likely: odds over hypotheses and their unknowns, moved by readings.

@@ -1,0 +1,1 @@
+//! What a person or a program sees: prompt, pipe, text, audit, demo.

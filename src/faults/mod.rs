@@ -1,0 +1,5 @@
+//! What may be wrong here: fault kinds at places, their edits, priors, pairs.
+
+pub mod fault;
+
+pub use fault::Fault;

@@ -1,0 +1,1 @@
+//! Which cleared check tells most per minute, and when to stop.

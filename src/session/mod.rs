@@ -1,0 +1,1 @@
+//! A visit: commands in, events to the log, state and views out.
