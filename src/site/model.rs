@@ -260,8 +260,8 @@ pub struct Circuit {
     pub name: String,
     /// RCD it hangs on (id), if any.
     pub rcd: Option<String>,
-    /// Main switch it hangs on (id); the board's first unless named.
-    pub main: String,
+    /// Main switch it hangs on (id): the board's first unless named; `None`: the board has none.
+    pub main: Option<String>,
     /// Phase.
     pub phase: Phase,
     /// Breaker.
