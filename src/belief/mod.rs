@@ -1,1 +1,3 @@
 //! What is likely: odds over hypotheses and their unknowns, moved by readings.
+
+pub mod odds;

@@ -1,6 +1,8 @@
 //! How to compute with numbers: elimination, distributions, random streams, with the same bits everywhere.
 
 pub mod dist;
+mod normal;
+pub mod quadrature;
 pub mod rng;
 pub mod special;
 pub mod stats;

@@ -1,1 +1,7 @@
 //! Which cleared check tells most per minute, and when to stop.
+
+pub mod exact;
+pub mod information;
+pub mod order;
+pub mod pair;
+mod panels;

@@ -34,23 +34,36 @@ impl Site {
 
     /// An RCD.
     pub fn rcd(&self, id: &str) -> Option<&Rcd> {
-        self.boards.iter().flat_map(|b| &b.rcds).find(|r| r.id == id)
+        self.boards
+            .iter()
+            .flat_map(|b| &b.rcds)
+            .find(|r| r.id == id)
     }
 
     /// Indices of board and circuit.
     pub fn circuit_index(&self, id: &str) -> Option<(usize, usize)> {
-        self.boards
-            .iter()
-            .enumerate()
-            .find_map(|(b, board)| board.circuits.iter().position(|c| c.id == id).map(|c| (b, c)))
+        self.boards.iter().enumerate().find_map(|(b, board)| {
+            board
+                .circuits
+                .iter()
+                .position(|c| c.id == id)
+                .map(|c| (b, c))
+        })
     }
 
     /// A point by its id in the file, `c1.p1`.
     pub fn point_ref(&self, id: &str) -> Option<PointRef> {
         let (circuit_id, point_id) = id.split_once('.')?;
         let (board, circuit) = self.circuit_index(circuit_id)?;
-        let point = self.boards[board].circuits[circuit].points.iter().position(|p| p.id == point_id)?;
-        Some(PointRef { board, circuit, point })
+        let point = self.boards[board].circuits[circuit]
+            .points
+            .iter()
+            .position(|p| p.id == point_id)?;
+        Some(PointRef {
+            board,
+            circuit,
+            point,
+        })
     }
 
     /// Index of a piece of equipment.
@@ -87,7 +100,11 @@ impl Site {
     pub fn points(&self) -> impl Iterator<Item = PointRef> + '_ {
         self.boards.iter().enumerate().flat_map(|(board, b)| {
             b.circuits.iter().enumerate().flat_map(move |(circuit, c)| {
-                (0..c.points.len()).map(move |point| PointRef { board, circuit, point })
+                (0..c.points.len()).map(move |point| PointRef {
+                    board,
+                    circuit,
+                    point,
+                })
             })
         })
     }
@@ -99,12 +116,19 @@ impl Site {
 
     /// Whether cables go on from a point.
     pub fn goes_on(&self, at: PointRef) -> bool {
-        self.circuit_of(at).points.iter().any(|p| p.from == Some(at.point))
+        self.circuit_of(at)
+            .points
+            .iter()
+            .any(|p| p.from == Some(at.point))
     }
 
     /// Phases of the supply.
     pub fn supply_phase(&self) -> Phase {
-        if self.supply.phases == 3 { Phase::Three } else { Phase::One(1) }
+        if self.supply.phases == 3 {
+            Phase::Three
+        } else {
+            Phase::One(1)
+        }
     }
 
     /// Phases on a board's bars.
@@ -125,21 +149,31 @@ impl Site {
         if let Phase::One(line) = self.board_phase(board) {
             return Phase::One(line);
         }
-        self.lines_on_rcd(board, home, &device.id, 0).unwrap_or(Phase::One(1))
+        self.lines_on_rcd(board, home, &device.id, 0)
+            .unwrap_or(Phase::One(1))
     }
 
     fn lines_on_rcd(&self, index: usize, home: &Board, id: &str, depth: usize) -> Option<Phase> {
         let hangs = |rcd: &Option<String>| rcd.as_deref() == Some(id);
-        let circuit = home.circuits.iter().find(|c| hangs(&c.rcd)).map(|c| c.phase);
+        let circuit = home
+            .circuits
+            .iter()
+            .find(|c| hangs(&c.rcd))
+            .map(|c| c.phase);
         let submain = || {
             self.boards.iter().find_map(|b| match &b.feed {
-                Feed::Submain { board, rcd, phase, .. } if *board == index && hangs(rcd) => Some(*phase),
+                Feed::Submain {
+                    board, rcd, phase, ..
+                } if *board == index && hangs(rcd) => Some(*phase),
                 _ => None,
             })
         };
         let next = || {
             // The depth stops a chain longer than the number of devices, which checking refuses.
-            let next = home.rcds.iter().find(|r| hangs(&r.after) && depth < home.rcds.len())?;
+            let next = home
+                .rcds
+                .iter()
+                .find(|r| hangs(&r.after) && depth < home.rcds.len())?;
             self.lines_on_rcd(index, home, &next.id, depth + 1)
         };
         circuit.or_else(submain).or_else(next)
