@@ -1,7 +1,15 @@
 //! What the trade knows, as data: fault kinds, checks, equipment, symptoms, limits, instruments.
 
+mod diagnose;
+mod issue;
+mod library;
+mod parse;
 pub mod procedure;
 pub mod records;
+mod source;
+pub mod words;
 
-pub use procedure::{Hookup, Load, Meter, Provoke, Setup, SourceMode, UnplugSet};
+pub use issue::{Issue, KnowledgeError};
+pub use library::Knowledge;
+pub use procedure::{AllWord, Hookup, Load, Meter, MeterWord, Provoke, Setup, SourceMode, UnplugSet};
 pub use records::*;

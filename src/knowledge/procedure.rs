@@ -200,3 +200,32 @@ pub enum Hookup {
         what: String,
     },
 }
+
+impl Hookup {
+    /// The quantity's word of contract §3.
+    pub fn quantity(&self) -> &'static str {
+        match self {
+            Self::Volts { .. } => "volts",
+            Self::Amps { .. } => "amps",
+            Self::Insulation { .. } => "insulation",
+            Self::Continuity { .. } => "continuity",
+            Self::Loop { .. } => "loop",
+            Self::TripTime { .. } => "trip-time",
+            Self::Ramp { .. } => "ramp",
+            Self::Holds { .. } => "holds",
+            Self::Lamp { .. } => "lamp",
+            Self::Seen { .. } => "seen",
+        }
+    }
+
+    /// Key of the row in errors.toml that says how its instrument errs.
+    pub fn error_key(&self) -> &'static str {
+        match self {
+            Self::Volts { meter: Some(Meter::Named(MeterWord::LowZ)), .. } => "volts-low-z",
+            Self::Volts { meter: Some(Meter::Ohms(ohms)), .. } if *ohms < 1e5 => "volts-low-z",
+            Self::Volts { .. } => "volts-high-z",
+            Self::Loop { amps: Some(amps), .. } if *amps <= 0.1 => "loop-no-trip",
+            other => other.quantity(),
+        }
+    }
+}

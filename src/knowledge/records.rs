@@ -1,9 +1,6 @@
 //! The serde forms of the knowledge files: what a fault kind, a check, a row of equipment says.
 //!
-//! Strings in braces are filled per place: `{at}`, `{to}`, `{circuit}`, `{board}`, `{rcd}`, `{bus}`
-//! (the RCD or board whose bars feed the place), `{end}`, `{conductor}` in ids; and the trade's
-//! words of the site (`{line}`, `{neutral}`, `{earth}`, `{link}`, `{rcd-word}`, `{at-name}`,
-//! `{to-name}`) in what a person reads.
+//! Strings in braces are filled per place; which names may stand where is in [`super::words`].
 
 use std::collections::BTreeMap;
 
@@ -74,6 +71,15 @@ pub enum Prior {
         /// Probability of one.
         p: f64,
     },
+    /// From `lower` with probability `p`, else from `upper`; the two do not overlap.
+    Either {
+        /// Probability of the lower part.
+        p: f64,
+        /// The lower part.
+        lower: Box<Prior>,
+        /// The upper part.
+        upper: Box<Prior>,
+    },
 }
 
 /// The unknown value of a fault kind.
@@ -90,13 +96,13 @@ pub struct FaultValue {
     pub source: String,
 }
 
-/// An amount in an edit: a number, `"open"`, `"value"` (the fault's), or `"reciprocal"` (230 V over the value).
+/// An amount in an edit: a number, or one of the words [`crate::knowledge::words::AMOUNTS`].
 #[derive(Clone, Debug, PartialEq, Deserialize)]
 #[serde(untagged)]
 pub enum Amount {
     /// A number, SI.
     Number(f64),
-    /// `open`, `value`, `230/value`, `neutral-bar`.
+    /// `open`, `value` (the fault's), `230/value`, or a terminal where a conductor lands.
     Word(String),
 }
 
@@ -157,6 +163,12 @@ pub enum EditForm {
         /// V.
         volts: Amount,
     },
+    /// A path from the network's first line to the pipe with street metal, else to soil: a neighbour's
+    /// load that returns here.
+    NetworkInjection {
+        /// Ohms.
+        ohms: Amount,
+    },
     /// A leak to the frame from a position along a heating element.
     Element {
         /// Equipment.
@@ -168,7 +180,7 @@ pub enum EditForm {
     Device {
         /// Device id.
         id: String,
-        /// `trip-amps`, `trip-seconds`, `dead`, `worn`.
+        /// `trip-amps`, `trip-seconds`, `dead`.
         what: String,
         /// Its new value.
         #[serde(default)]
@@ -196,6 +208,20 @@ pub struct Look {
     /// `loose`, `burnt`, …
     pub what: String,
     /// Probability that a look finds it.
+    pub p: f64,
+}
+
+/// How often a check reads a word under a fault that has no edit, in place of the circuit's forecast.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct OutcomeForm {
+    /// Check id.
+    pub test: String,
+    /// Place of the check, filled as in edits.
+    pub at: String,
+    /// The word it reads (for a number: what it reads is left to the sound circuit).
+    pub word: String,
+    /// Probability of that word.
     pub p: f64,
 }
 
@@ -235,7 +261,7 @@ pub struct FaultKind {
     /// Place class for `to`.
     #[serde(default)]
     pub to: Option<String>,
-    /// Conditions on the place (words of `faults::enumerate`), all of which must hold.
+    /// Conditions on the place, all of which must hold: [`crate::knowledge::words::ONLY`].
     #[serde(default)]
     pub only: Vec<String>,
     /// Choices for `conductor`.
@@ -250,10 +276,14 @@ pub struct FaultKind {
     /// Circuit edits; empty: not predictable.
     #[serde(default)]
     pub edits: Vec<EditForm>,
+    /// Outcomes of checks that the edits do not tell.
+    #[serde(default)]
+    pub outcomes: Vec<OutcomeForm>,
     /// How it comes and goes; absent: steady.
     #[serde(default)]
     pub manner: Option<Manner>,
-    /// Expected number in an installation that calls, per place it can sit at.
+    /// Expected number in an installation that calls, per place `at` it can sit at; the choices of `to`
+    /// and `conductor` at that place share it equally.
     pub presence: f64,
     /// Marker of `presence` and `complaints`.
     pub marker: Marker,
@@ -315,8 +345,11 @@ pub struct CheckForm {
     pub id: String,
     /// What a person reads.
     pub name: String,
-    /// Place selector (words of `checks::catalogue`).
+    /// Place selector: [`crate::knowledge::words::EACH`].
     pub each: String,
+    /// Conditions on the place, all of which must hold: [`crate::knowledge::words::ONLY`].
+    #[serde(default)]
+    pub only: Vec<String>,
     /// Setup with templates.
     #[serde(default)]
     pub setup: Setup,
@@ -351,6 +384,10 @@ pub struct CheckForm {
     /// Never advised, only owed as a re-test or typed by hand.
     #[serde(default)]
     pub recheck_only: bool,
+    /// A stage of the procedure that proves the supply neutral: its own `needs` stand in place of that
+    /// proof, so its load may go above what is free.
+    #[serde(default)]
+    pub staged: bool,
 }
 
 /// A row of equipment.
@@ -394,7 +431,10 @@ pub struct ParameterRow {
     pub system: Option<String>,
     /// Its prior where the site says nothing.
     pub prior: Prior,
-    /// Geometric (or relative) spread where the site gives a number.
+    /// The prior is a factor on what is known of the thing: an equipment row's number, an RCD's rating.
+    #[serde(default)]
+    pub factor: bool,
+    /// Geometric standard deviation where the site gives a number.
     #[serde(default)]
     pub spread: Option<f64>,
     /// How well this is known.
@@ -407,7 +447,7 @@ pub struct ParameterRow {
 #[derive(Clone, Debug, PartialEq, Deserialize)]
 #[serde(deny_unknown_fields)]
 pub struct ErrorRow {
-    /// Quantity of contract §3, with `high-z` or `low-z` behind volts, `no-trip` behind loop.
+    /// What [`Hookup::error_key`] says: `volts-high-z`, `volts-low-z`, `loop-no-trip`, else the quantity.
     pub quantity: String,
     /// Relative standard deviation.
     pub relative: f64,
@@ -420,7 +460,7 @@ pub struct ErrorRow {
     pub over: f64,
     /// Smallest step, SI.
     pub resolution: f64,
-    /// Probability that a reading is wrong altogether.
+    /// Probability that a reading (a number or a word) is wrong altogether.
     pub slip: f64,
     /// How well this is known.
     pub marker: Marker,
@@ -467,10 +507,12 @@ pub struct SymptomRow {
     /// Warning codes owed at once.
     #[serde(default)]
     pub warnings: Vec<String>,
-    /// Simulated signs; any of them makes it likely.
+    /// Simulated signs. P(complaint here | a cause) is the kind's `complaints` entry, times 1 where any
+    /// sign that fits the place and `when` shows under it, times `floor` where none does; without a
+    /// fitting sign it is that entry alone.
     #[serde(default)]
     pub signs: Vec<Sign>,
-    /// Floor on its probability where no sign shows.
+    /// Factor where no sign shows.
     pub floor: f64,
     /// P(complaint of this kind | nothing wrong now, and there was a call).
     pub nothing_wrong: f64,
@@ -495,24 +537,118 @@ pub struct LimitRow {
     /// Rule sets it belongs to; empty: every one.
     #[serde(default)]
     pub rules: Vec<String>,
+    /// Quantity of contract §3 that it judges.
+    pub quantity: String,
+    /// Conditions on the place: words of [`crate::knowledge::words::ONLY`].
+    #[serde(default)]
+    pub only: Vec<String>,
     /// Least acceptable, SI.
     #[serde(default)]
     pub least: Option<f64>,
-    /// Most acceptable, SI (may be `"loop"` in `computed`).
+    /// Most acceptable, SI.
     #[serde(default)]
     pub most: Option<f64>,
     /// Required word.
     #[serde(default)]
     pub word: Option<String>,
-    /// Computed from the site: `loop-disconnection`, …
+    /// How `least` and `most` follow from the site: [`crate::knowledge::words::COMPUTED`].
     #[serde(default)]
     pub computed: Option<String>,
+    /// For `loop-disconnection`: multiple of the breaker's rating that surely trips it, by curve `B` `C` `D`.
+    #[serde(default)]
+    pub factors: BTreeMap<String, f64>,
+    /// For `loop-disconnection`: share of the nominal volts that is counted on (Cmin); 1 where absent.
+    #[serde(default)]
+    pub share_of_volts: Option<f64>,
     /// The text to show.
     pub text: String,
     /// Standard and clause.
     pub source: String,
     /// How well it is known.
     pub marker: Marker,
+}
+
+/// A rule set: the jurisdiction and edition that a site names in `rules`.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct RuleRow {
+    /// The word in the site file.
+    pub id: String,
+    /// What a person reads.
+    pub name: String,
+    /// The emergency number.
+    pub emergency: String,
+    /// What local law asks after a shock, as text to show.
+    pub report: String,
+    /// Where from.
+    pub source: String,
+    /// How well it is known.
+    pub marker: Marker,
+}
+
+/// An instrument of contract §6 `kit`.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct KitRow {
+    /// The word.
+    pub kind: String,
+    /// What a person reads.
+    pub name: String,
+    /// Words it is taken to bring with it.
+    #[serde(default)]
+    pub brings: Vec<String>,
+}
+
+/// Resistance of a conductor by IEC 60228.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct CableRow {
+    /// Cross-section, mm².
+    pub mm2: f64,
+    /// Plain copper class 1/2, Ω/m at 20 °C.
+    #[serde(default)]
+    pub copper: Option<f64>,
+    /// Aluminium, Ω/m at 20 °C.
+    #[serde(default)]
+    pub aluminium: Option<f64>,
+    /// How well it is known.
+    pub marker: Marker,
+    /// Where from.
+    pub source: String,
+}
+
+/// A metal's temperature coefficient of resistance.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct MetalRow {
+    /// `copper` or `aluminium`.
+    pub metal: String,
+    /// Per kelvin, at 20 °C.
+    pub per_kelvin: f64,
+    /// Ω·mm²/m at 20 °C, for sizes between the rows.
+    pub ohm_mm2_per_metre: f64,
+    /// How well it is known.
+    pub marker: Marker,
+    /// Where from.
+    pub source: String,
+}
+
+/// A row of a body-impedance table (IEC 60479-1): ohms against touch volts, hand to hand.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct BodyRow {
+    /// Edition and state of the skin: `dry-1994`, `dry`, `wet`, `salt-wet`.
+    pub table: String,
+    /// Percentile of people: 5, 50, 95.
+    pub percentile: f64,
+    /// Touch volts, rising.
+    pub volts: Vec<f64>,
+    /// Impedance at each, Ω.
+    pub ohms: Vec<f64>,
+    /// How well it is known.
+    pub marker: Marker,
+    /// Where from.
+    pub source: String,
 }
 
 /// Minutes of the acts that change a setup.
@@ -561,6 +697,18 @@ pub struct SafetyRow {
     pub supply_proof: String,
     /// Probability below which a hypothesis is not credible for a hazard.
     pub credible: f64,
+}
+
+/// Expected shares of what is not a fault kind, in the units of `presence`.
+#[derive(Clone, Debug, PartialEq, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Beside {
+    /// Calls where nothing is wrong now.
+    pub nothing_wrong: f64,
+    /// Calls whose cause no kind describes.
+    pub unlisted: f64,
+    /// P(a given complaint | an unlisted cause): the same for every complaint.
+    pub unlisted_complaint: f64,
 }
 
 /// Costs that decide when to stop (minutes).
