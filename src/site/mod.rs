@@ -1,7 +1,9 @@
 //! The installation: what is there and how it hangs together (contract §1).
 
+pub mod file;
 pub mod lookup;
 pub mod model;
 
+pub use file::{Known, SiteError, SiteWarning, load_path, load_str, load_value};
 pub use lookup::lines_of;
 pub use model::*;
