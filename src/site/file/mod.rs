@@ -15,3 +15,6 @@ mod rest;
 pub use error::{SiteError, SiteWarning};
 pub use known::Known;
 pub use load::{LoadedFile, MOST_BYTES, SCHEMA, load_path, load_str, load_value};
+
+#[cfg(test)]
+mod tests;
