@@ -2,7 +2,7 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
-use crate::knowledge::EquipmentRow;
+use crate::knowledge::{EquipmentRow, Knowledge};
 use crate::site::model::Class;
 
 /// The words of knowledge that a site file may use.
@@ -79,5 +79,11 @@ impl Known {
             kinds: one.chain(two).collect(),
             rules: BTreeSet::new(),
         }
+    }
+}
+
+impl From<&Knowledge> for Known {
+    fn from(knowledge: &Knowledge) -> Self {
+        Self::new(&knowledge.equipment, knowledge.rules.iter().map(|r| r.id.as_str()))
     }
 }
