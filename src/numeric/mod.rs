@@ -1,5 +1,6 @@
 //! How to compute with numbers: elimination, distributions, random streams, with the same bits everywhere.
 
+pub mod fold;
 pub mod dist;
 mod normal;
 pub mod quadrature;
