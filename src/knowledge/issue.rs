@@ -20,7 +20,11 @@ impl fmt::Display for Issue {
         if self.line == 0 {
             write!(f, "{}: {}; {}", self.file, self.what, self.cure)
         } else {
-            write!(f, "{}:{}: {}; {}", self.file, self.line, self.what, self.cure)
+            write!(
+                f,
+                "{}:{}: {}; {}",
+                self.file, self.line, self.what, self.cure
+            )
         }
     }
 }
@@ -29,7 +33,9 @@ impl fmt::Display for Issue {
 #[derive(Debug, thiserror::Error)]
 pub enum KnowledgeError {
     /// A folder or file that cannot be read.
-    #[error("cannot read {path}: {source}; name a readable folder of knowledge files with --knowledge")]
+    #[error(
+        "cannot read {path}: {source}; name a readable folder of knowledge files with --knowledge"
+    )]
     Read {
         /// The path.
         path: String,
@@ -43,9 +49,17 @@ pub enum KnowledgeError {
 
 fn listed(issues: &[Issue]) -> String {
     let lines: Vec<String> = issues.iter().map(Issue::to_string).collect();
-    format!("{} in the knowledge files:\n{}", count(lines.len()), lines.join("\n"))
+    format!(
+        "{} in the knowledge files:\n{}",
+        count(lines.len()),
+        lines.join("\n")
+    )
 }
 
 fn count(n: usize) -> String {
-    if n == 1 { "1 fault".into() } else { format!("{n} faults") }
+    if n == 1 {
+        "1 fault".into()
+    } else {
+        format!("{n} faults")
+    }
 }

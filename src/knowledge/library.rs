@@ -93,7 +93,9 @@ impl Knowledge {
 
     /// A fault kind by its word.
     pub fn fault(&self, kind: &str) -> Option<&FaultKind> {
-        self.fault_rows.get(kind).and_then(|row| self.faults.get(*row))
+        self.fault_rows
+            .get(kind)
+            .and_then(|row| self.faults.get(*row))
     }
 
     /// A check by its word.
@@ -125,8 +127,17 @@ impl Knowledge {
     /// system (`TN-C-S`, `TN-S`, `TT`) counts before one for every system.
     pub fn parameter(&self, path: &str, system: &str) -> Option<&ParameterRow> {
         let fits = |row: &&ParameterRow| matches(&row.path, path);
-        let own = self.parameters.iter().filter(fits).find(|row| row.system.as_deref() == Some(system));
-        own.or_else(|| self.parameters.iter().filter(fits).find(|row| row.system.is_none()))
+        let own = self
+            .parameters
+            .iter()
+            .filter(fits)
+            .find(|row| row.system.as_deref() == Some(system));
+        own.or_else(|| {
+            self.parameters
+                .iter()
+                .filter(fits)
+                .find(|row| row.system.is_none())
+        })
     }
 
     /// How the instrument errs that reads a quantity, by key (`volts-high-z`, `loop-no-trip`, `amps`, …).
@@ -169,8 +180,16 @@ fn assemble(parsed: Parsed<'_>, digest: String) -> Option<Knowledge> {
     let mut cables = bare(parsed.cables);
     cables.sort_by(|a, b| a.mm2.total_cmp(&b.mm2));
     Some(Knowledge {
-        fault_rows: faults.iter().enumerate().map(|(row, f)| (f.kind.clone(), row)).collect(),
-        check_rows: checks.iter().enumerate().map(|(row, c)| (c.id.clone(), row)).collect(),
+        fault_rows: faults
+            .iter()
+            .enumerate()
+            .map(|(row, f)| (f.kind.clone(), row))
+            .collect(),
+        check_rows: checks
+            .iter()
+            .enumerate()
+            .map(|(row, c)| (c.id.clone(), row))
+            .collect(),
         faults,
         checks,
         equipment: bare(parsed.equipment),
@@ -216,7 +235,11 @@ mod tests {
     #[test]
     fn embedded_knowledge_is_sound() {
         let issues = Knowledge::check_files(None).unwrap();
-        assert!(issues.is_empty(), "{}", issues.iter().map(|i| format!("{i}\n")).collect::<String>());
+        assert!(
+            issues.is_empty(),
+            "{}",
+            issues.iter().map(|i| format!("{i}\n")).collect::<String>()
+        );
     }
 
     #[test]

@@ -11,5 +11,7 @@ pub mod words;
 
 pub use issue::{Issue, KnowledgeError};
 pub use library::Knowledge;
-pub use procedure::{AllWord, Hookup, Load, Meter, MeterWord, Provoke, Setup, SourceMode, UnplugSet};
+pub use procedure::{
+    AllWord, Hookup, Load, Meter, MeterWord, Provoke, Setup, SourceMode, UnplugSet,
+};
 pub use records::*;

@@ -40,7 +40,12 @@ impl<T> Located<'_, T> {
 
     /// An issue at a dotted path.
     pub fn issue(&self, path: &str, what: impl Into<String>, cure: impl Into<String>) -> Issue {
-        Issue { file: self.file.to_owned(), line: self.line(path), what: what.into(), cure: cure.into() }
+        Issue {
+            file: self.file.to_owned(),
+            line: self.line(path),
+            what: what.into(),
+            cure: cure.into(),
+        }
     }
 }
 
@@ -85,8 +90,23 @@ pub struct Parsed<'a> {
 
 /// Keys that a file may hold: the first group as `[[key]]`, many; the second as `[key]`, one in all files.
 const TABLES: &[&str] = &[
-    "fault", "check", "equipment", "parameter", "error", "symptom", "warning", "rules", "limit", "kit", "cable",
-    "metal", "body", "effort", "safety", "costs", "beside",
+    "fault",
+    "check",
+    "equipment",
+    "parameter",
+    "error",
+    "symptom",
+    "warning",
+    "rules",
+    "limit",
+    "kit",
+    "cable",
+    "metal",
+    "body",
+    "effort",
+    "safety",
+    "costs",
+    "beside",
 ];
 
 /// Reads all files; what is faulty is left out and reported.
@@ -124,7 +144,11 @@ fn parse_file<'a>(shown: &'a str, text: &'a str, into: &mut Parsed<'a>, issues: 
         return;
     }
     for (key, value) in root.into_inner() {
-        let mut reader = Reader { shown, text, issues };
+        let mut reader = Reader {
+            shown,
+            text,
+            issues,
+        };
         match key.get_ref().as_ref() {
             "fault" => reader.rows(value, &mut into.faults),
             "check" => reader.rows(value, &mut into.checks),
@@ -160,7 +184,11 @@ struct Reader<'a, 'i> {
 }
 
 impl<'a> Reader<'a, '_> {
-    fn rows<T: Deserialize<'a>>(&mut self, value: Spanned<DeValue<'a>>, into: &mut Vec<Located<'a, T>>) {
+    fn rows<T: Deserialize<'a>>(
+        &mut self,
+        value: Spanned<DeValue<'a>>,
+        into: &mut Vec<Located<'a, T>>,
+    ) {
         let start = value.span().start;
         match value.into_inner() {
             DeValue::Array(rows) => {
@@ -177,9 +205,18 @@ impl<'a> Reader<'a, '_> {
         }
     }
 
-    fn row<T: Deserialize<'a>>(&mut self, value: Spanned<DeValue<'a>>, into: &mut Vec<Located<'a, T>>) {
+    fn row<T: Deserialize<'a>>(
+        &mut self,
+        value: Spanned<DeValue<'a>>,
+        into: &mut Vec<Located<'a, T>>,
+    ) {
         match T::deserialize(toml::de::ValueDeserializer::from(value.clone())) {
-            Ok(record) => into.push(Located { record, file: self.shown, text: self.text, tree: value }),
+            Ok(record) => into.push(Located {
+                record,
+                file: self.shown,
+                text: self.text,
+                tree: value,
+            }),
             Err(error) => {
                 let start = error.span().map_or(value.span().start, |s| s.start);
                 self.issues.push(Issue {
@@ -195,14 +232,20 @@ impl<'a> Reader<'a, '_> {
 
 fn line_of(text: &str, offset: usize) -> usize {
     let end = offset.min(text.len());
-    text.as_bytes()[..end].iter().filter(|b| **b == b'\n').count() + 1
+    text.as_bytes()[..end]
+        .iter()
+        .filter(|b| **b == b'\n')
+        .count()
+        + 1
 }
 
 /// The nearest of some words in quotes, or all of them if none is near.
 pub fn nearest<'w>(word: &str, words: impl Iterator<Item = &'w str>) -> String {
     let words: Vec<&str> = words.collect();
-    let mut near: Vec<(usize, &str)> =
-        words.iter().map(|w| (strsim::damerau_levenshtein(word, w), *w)).collect();
+    let mut near: Vec<(usize, &str)> = words
+        .iter()
+        .map(|w| (strsim::damerau_levenshtein(word, w), *w))
+        .collect();
     near.sort();
     match near.first() {
         Some((distance, best)) if *distance <= 1 + best.len() / 3 => format!("`{best}`"),

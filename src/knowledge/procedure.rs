@@ -221,10 +221,18 @@ impl Hookup {
     /// Key of the row in errors.toml that says how its instrument errs.
     pub fn error_key(&self) -> &'static str {
         match self {
-            Self::Volts { meter: Some(Meter::Named(MeterWord::LowZ)), .. } => "volts-low-z",
-            Self::Volts { meter: Some(Meter::Ohms(ohms)), .. } if *ohms < 1e5 => "volts-low-z",
+            Self::Volts {
+                meter: Some(Meter::Named(MeterWord::LowZ)),
+                ..
+            } => "volts-low-z",
+            Self::Volts {
+                meter: Some(Meter::Ohms(ohms)),
+                ..
+            } if *ohms < 1e5 => "volts-low-z",
             Self::Volts { .. } => "volts-high-z",
-            Self::Loop { amps: Some(amps), .. } if *amps <= 0.1 => "loop-no-trip",
+            Self::Loop {
+                amps: Some(amps), ..
+            } if *amps <= 0.1 => "loop-no-trip",
             other => other.quantity(),
         }
     }

@@ -33,7 +33,13 @@ fn collect(dir: &Dir<'_>, into: &mut Files) {
     for file in dir.files() {
         if file.path().extension().is_some_and(|e| e == "toml") {
             let path = file.path().to_string_lossy().replace('\\', "/");
-            into.insert(path.clone(), File { shown: format!("<built-in>/{path}"), bytes: file.contents().to_vec() });
+            into.insert(
+                path.clone(),
+                File {
+                    shown: format!("<built-in>/{path}"),
+                    bytes: file.contents().to_vec(),
+                },
+            );
         }
     }
     for sub in dir.dirs() {
@@ -50,17 +56,33 @@ pub fn add_folder(root: &Path, files: &mut Files) -> Result<(), KnowledgeError> 
 }
 
 fn walk(folder: &Path, prefix: &str, files: &mut Files) -> Result<(), KnowledgeError> {
-    let failed = |path: &Path, source| KnowledgeError::Read { path: path.display().to_string(), source };
+    let failed = |path: &Path, source| KnowledgeError::Read {
+        path: path.display().to_string(),
+        source,
+    };
     let entries = std::fs::read_dir(folder).map_err(|e| failed(folder, e))?;
     for entry in entries {
         let path = entry.map_err(|e| failed(folder, e))?.path();
-        let name = path.file_name().map(|n| n.to_string_lossy().into_owned()).unwrap_or_default();
-        let relative = if prefix.is_empty() { name } else { format!("{prefix}/{name}") };
+        let name = path
+            .file_name()
+            .map(|n| n.to_string_lossy().into_owned())
+            .unwrap_or_default();
+        let relative = if prefix.is_empty() {
+            name
+        } else {
+            format!("{prefix}/{name}")
+        };
         if path.is_dir() {
             walk(&path, &relative, files)?;
         } else if path.extension().is_some_and(|e| e == "toml") {
             let bytes = std::fs::read(&path).map_err(|e| failed(&path, e))?;
-            files.insert(relative, File { shown: path.display().to_string(), bytes });
+            files.insert(
+                relative,
+                File {
+                    shown: path.display().to_string(),
+                    bytes,
+                },
+            );
         }
     }
     Ok(())
@@ -75,7 +97,10 @@ pub fn digest(files: &Files) -> String {
             hash.update(part);
         }
     }
-    hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
+    hash.finalize()
+        .iter()
+        .map(|byte| format!("{byte:02x}"))
+        .collect()
 }
 
 #[cfg(test)]
@@ -83,7 +108,10 @@ mod tests {
     use super::*;
 
     fn file(text: &str) -> File {
-        File { shown: String::new(), bytes: text.as_bytes().to_vec() }
+        File {
+            shown: String::new(),
+            bytes: text.as_bytes().to_vec(),
+        }
     }
 
     #[test]

@@ -13,37 +13,67 @@ pub const PLACES: &[Meaning] = &[
     ("board", "a switchboard"),
     ("rcd", "an RCD"),
     ("circuit", "a circuit"),
-    ("breaker", "a circuit's or submain's breaker, `c1.breaker` (complaints only)"),
+    (
+        "breaker",
+        "a circuit's or submain's breaker, `c1.breaker` (complaints only)",
+    ),
     ("point", "a point, `c1.p1`"),
     ("equipment", "a piece of equipment"),
     ("bond", "a bonded service or structure"),
-    ("electrode", "`electrode`, or `shed.electrode` of a board with its own"),
+    (
+        "electrode",
+        "`electrode`, or `shed.electrode` of a board with its own",
+    ),
     ("source", "a source that can backfeed"),
-    ("bar", "a neutral bar: `msb.N`, or `msb.rcd2.N` (as `to` only)"),
+    (
+        "bar",
+        "a neutral bar: `msb.N`, or `msb.rcd2.N` (as `to` only)",
+    ),
 ];
 
 /// Selectors of a check's `each`: the check is made once for every such place, which is `{at}`.
 pub const EACH: &[Meaning] = &[
-    ("once", "the whole site; `{at}` and `{board}` are the main board"),
+    (
+        "once",
+        "the whole site; `{at}` and `{board}` are the main board",
+    ),
     ("main-board", "the board that the service feeds"),
     ("board", "every board"),
-    ("sub-board", "every board that a submain feeds; `{board}` is the one that feeds it"),
-    ("main-line", "each line of the main board on three phases, as `{conductor}`; `{at}` is the board"),
+    (
+        "sub-board",
+        "every board that a submain feeds; `{board}` is the one that feeds it",
+    ),
+    (
+        "main-line",
+        "each line of the main board on three phases, as `{conductor}`; `{at}` is the board",
+    ),
     ("rcd", "every RCD"),
     ("circuit", "every circuit"),
     ("circuit-on-rcd", "every circuit on an RCD"),
-    ("circuit-pair", "two circuits of one board on different neutral bars, `{a}` and `{b}`"),
+    (
+        "circuit-pair",
+        "two circuits of one board on different neutral bars, `{a}` and `{b}`",
+    ),
     ("point", "every point"),
     ("outlet", "every point of kind outlet"),
-    ("last-point", "of each circuit the point farthest from its board"),
-    ("split", "of each circuit with at least three points the one nearest its middle"),
+    (
+        "last-point",
+        "of each circuit the point farthest from its board",
+    ),
+    (
+        "split",
+        "of each circuit with at least three points the one nearest its middle",
+    ),
     ("bond", "every bond"),
     ("equipment", "every piece of equipment"),
     ("plug-equipment", "equipment on a plug"),
     ("frame", "class I equipment"),
     ("element", "equipment with a heating element"),
     ("source", "every source that can backfeed"),
-    ("electrode", "`electrode`, and `shed.electrode` of every board with its own"),
+    (
+        "electrode",
+        "`electrode`, and `shed.electrode` of every board with its own",
+    ),
 ];
 
 /// Conditions on a place, in `only` of faults, checks and limits; all must hold.
@@ -52,20 +82,47 @@ pub const ONLY: &[Meaning] = &[
     ("TN-S", "the supply's system"),
     ("TT", "the supply's system"),
     ("TN", "the supply's system is TN-C-S or TN-S"),
-    ("has-link", "the place's board has its own neutral-earth link, as meant"),
-    ("no-link", "the place's board has no link of its own, as meant"),
-    ("has-electrode", "the place's board has its own main earth and electrode"),
+    (
+        "has-link",
+        "the place's board has its own neutral-earth link, as meant",
+    ),
+    (
+        "no-link",
+        "the place's board has no link of its own, as meant",
+    ),
+    (
+        "has-electrode",
+        "the place's board has its own main earth and electrode",
+    ),
     ("submain", "the place's board is fed by a submain"),
-    ("has-pe", "an earth conductor runs to the place with its feed (all but a submain with `pe_mm2` null)"),
-    ("switched-neutral", "every main switch of the place's board opens the neutral"),
-    ("solid-neutral", "a main switch of the place's board leaves the neutral closed"),
+    (
+        "has-pe",
+        "an earth conductor runs to the place with its feed (all but a submain with `pe_mm2` null)",
+    ),
+    (
+        "switched-neutral",
+        "every main switch of the place's board opens the neutral",
+    ),
+    (
+        "solid-neutral",
+        "a main switch of the place's board leaves the neutral closed",
+    ),
     ("switched-rcd", "the RCD opens its neutral"),
     ("delayed", "the RCD is of type S"),
     ("not-delayed", "the RCD is not of type S"),
     ("on-rcd", "the place is behind an RCD of its board"),
-    ("other-bar", "`to` hangs on another neutral bar of the same board than `at`"),
-    ("nearest-point", "in each other circuit, `to` is only the point nearest to `at` in cable length"),
-    ("light-or-switch", "the point is a light, a switch or a junction"),
+    (
+        "other-bar",
+        "`to` hangs on another neutral bar of the same board than `at`",
+    ),
+    (
+        "nearest-point",
+        "in each other circuit, `to` is only the point nearest to `at` in cable length",
+    ),
+    (
+        "light-or-switch",
+        "the point is a light, a switch or a junction",
+    ),
     ("class-I", "the equipment has an earthed frame"),
     ("class-II", "the equipment is double insulated"),
     ("element", "the equipment has a heating element"),
@@ -82,12 +139,21 @@ pub const ID_NAMES: &[Meaning] = &[
     ("to", "the fault's other place"),
     ("a", "the first circuit of a pair"),
     ("b", "the second circuit of a pair"),
-    ("point", "the place's point; of equipment, where it is connected"),
+    (
+        "point",
+        "the place's point; of equipment, where it is connected",
+    ),
     ("circuit", "the place's circuit"),
     ("to-circuit", "the circuit of `to`"),
-    ("board", "the place's board; of a bond, the main board; of a sub-board, the one that feeds it"),
+    (
+        "board",
+        "the place's board; of a bond, the main board; of a sub-board, the one that feeds it",
+    ),
     ("rcd", "the RCD that the place hangs on; of an RCD, itself"),
-    ("bus", "what its bars hang on: the RCD as `msb.rcd1`, else the board as `msb`"),
+    (
+        "bus",
+        "what its bars hang on: the RCD as `msb.rcd1`, else the board as `msb`",
+    ),
     ("main", "the main switch that feeds the place"),
     ("conductor", "the fault's conductor: L, L1, L2, L3, N, PE"),
 ];
@@ -95,10 +161,19 @@ pub const ID_NAMES: &[Meaning] = &[
 /// Names in braces that become several ids; only as a whole element of a list in a setup.
 pub const LIST_NAMES: &[Meaning] = &[
     ("mains", "every main switch of the main board"),
-    ("all-breakers", "every circuit and submain breaker of the place's board"),
-    ("rcd-breakers", "every circuit and submain breaker on the place's RCD"),
+    (
+        "all-breakers",
+        "every circuit and submain breaker of the place's board",
+    ),
+    (
+        "rcd-breakers",
+        "every circuit and submain breaker on the place's RCD",
+    ),
     ("other-breakers", "the same without the place's own circuit"),
-    ("circuit-equipment", "equipment on the place's circuit (in `unplug`: with a plug)"),
+    (
+        "circuit-equipment",
+        "equipment on the place's circuit (in `unplug`: with a plug)",
+    ),
     ("all-equipment", "all equipment (in `unplug`: with a plug)"),
 ];
 
@@ -179,10 +254,22 @@ pub const WHEN: &[Meaning] = &[
 
 /// How a limit's `least` and `most` follow from the site.
 pub const COMPUTED: &[Meaning] = &[
-    ("loop-disconnection", "most = share_of_volts × nominal volts / (factor of the breaker's curve × its rating)"),
-    ("times-rated-residual", "least and most are multiples of the RCD's rated residual current"),
-    ("times-nominal-volts", "least and most are multiples of the nominal volts"),
-    ("touch-over-residual", "most = touch volts in `most` / the rated residual current of the RCD ahead"),
+    (
+        "loop-disconnection",
+        "most = share_of_volts × nominal volts / (factor of the breaker's curve × its rating)",
+    ),
+    (
+        "times-rated-residual",
+        "least and most are multiples of the RCD's rated residual current",
+    ),
+    (
+        "times-nominal-volts",
+        "least and most are multiples of the nominal volts",
+    ),
+    (
+        "touch-over-residual",
+        "most = touch volts in `most` / the rated residual current of the RCD ahead",
+    ),
 ];
 
 /// Words a reading may be (contract §3).
@@ -199,8 +286,14 @@ pub const READING_WORDS: &[Meaning] = &[
 ];
 
 /// Warning codes of contract §6.
-pub const WARNINGS: &[&str] =
-    &["keep-off-metal", "call-network", "do-not-touch-board", "switch-off", "evacuate", "report-shock"];
+pub const WARNINGS: &[&str] = &[
+    "keep-off-metal",
+    "call-network",
+    "do-not-touch-board",
+    "switch-off",
+    "evacuate",
+    "report-shock",
+];
 
 /// Whether a vocabulary holds a word.
 pub fn has(vocabulary: &[Meaning], word: &str) -> bool {

@@ -27,7 +27,11 @@ struct Builder<'a> {
 
 /// `L`, or `L1`–`L3` for a part on three phases.
 fn line_word(lines: &[u8], line: u8) -> String {
-    if lines.len() > 1 { format!("L{line}") } else { "L".to_owned() }
+    if lines.len() > 1 {
+        format!("L{line}")
+    } else {
+        "L".to_owned()
+    }
 }
 
 /// Builds the sound circuit of a site and the table of its parameters.
@@ -56,7 +60,13 @@ pub(super) fn build(
         volts_override: None,
         hertz: site.supply.hertz,
     };
-    let mut b = Builder { site, knowledge, circuit, params, buses: BTreeMap::new() };
+    let mut b = Builder {
+        site,
+        knowledge,
+        circuit,
+        params,
+        buses: BTreeMap::new(),
+    };
     b.network()?;
     for board in &site.boards {
         b.board(board)?;
@@ -90,7 +100,11 @@ impl Builder<'_> {
     }
 
     fn site_lines(&self) -> &'static [u8] {
-        if self.site.supply.phases == 3 { &[1, 2, 3] } else { &[1] }
+        if self.site.supply.phases == 3 {
+            &[1, 2, 3]
+        } else {
+            &[1]
+        }
     }
 
     fn network(&mut self) -> Result<(), NetworkError> {
@@ -110,38 +124,77 @@ impl Builder<'_> {
         for &line in lines {
             let word = line_word(lines, line);
             let source = self.node(format!("network.source.{word}"));
-            self.circuit.emfs.push(Emf { plus: source, minus: star, line, source: None });
+            self.circuit.emfs.push(Emf {
+                plus: source,
+                minus: star,
+                line,
+                source: None,
+            });
             let street = self.node(format!("street.{word}"));
             self.keyed(format!("network.{word}"), source, street, Law::NetworkHalf);
             let service = self.node(format!("service.{word}"));
-            let branch = self.keyed(format!("service.{word}"), street, service, self.run(supply.service, true));
+            let branch = self.keyed(
+                format!("service.{word}"),
+                street,
+                service,
+                self.run(supply.service, true),
+            );
             self.switched(branch, fuse);
             self.through(branch, fuse);
         }
         self.keyed("network.N", star, street_n, Law::NetworkHalf);
         let service_n = self.node("service.N");
-        self.keyed("service.N", street_n, service_n, self.run(supply.service, true));
+        self.keyed(
+            "service.N",
+            street_n,
+            service_n,
+            self.run(supply.service, true),
+        );
         match supply.system {
             System::TnCS => {
-                let law = Law::Param { ohms: earth, factor: 2.0, gate: None };
+                let law = Law::Param {
+                    ohms: earth,
+                    factor: 2.0,
+                    gate: None,
+                };
                 self.keyed("network.earth", star, soil, law.clone());
                 self.keyed("street.earth", street_n, soil, law);
             }
             System::TnS | System::Tt => {
-                self.keyed("network.earth", star, soil, Law::Param { ohms: earth, factor: 1.0, gate: None });
+                self.keyed(
+                    "network.earth",
+                    star,
+                    soil,
+                    Law::Param {
+                        ohms: earth,
+                        factor: 1.0,
+                        gate: None,
+                    },
+                );
             }
         }
         if supply.system == System::TnS {
             let street = self.node("street.PE");
             self.keyed("network.PE", star, street, Law::NetworkHalf);
             let service = self.node("service.PE");
-            self.keyed("service.PE", street, service, self.run(supply.service, true));
+            self.keyed(
+                "service.PE",
+                street,
+                service,
+                self.run(supply.service, true),
+            );
         }
         Ok(())
     }
 
     fn run(&self, c: Conductor, reactive: bool) -> Law {
-        Law::Cable { metres: c.metres, mm2: c.mm2, metal: c.metal, scale: None, reactive }
+        Law::Cable {
+            metres: c.metres,
+            mm2: c.mm2,
+            metal: c.metal,
+            scale: None,
+            reactive,
+        }
     }
 
     fn board(&mut self, board: &Board) -> Result<(), NetworkError> {
@@ -149,16 +202,27 @@ impl Builder<'_> {
         let bar_n = self.node(format!("{id}.N"));
         let bar_pe = self.node(format!("{id}.PE"));
         let (incoming, incoming_n, lines) = self.feed(board)?;
-        let mut main_bus = Bus { lines: [None; 3], n: bar_n };
+        let mut main_bus = Bus {
+            lines: [None; 3],
+            n: bar_n,
+        };
         let mut first_main = None;
         for (i, main) in board.mains.iter().enumerate() {
             let device = self.circuit.add_device(&main.id, DeviceKind::Switch);
-            let mut bus = Bus { lines: [None; 3], n: bar_n };
+            let mut bus = Bus {
+                lines: [None; 3],
+                n: bar_n,
+            };
             for &line in lines {
                 let word = line_word(lines, line);
-                let Some(from) = incoming[usize::from(line) - 1] else { continue };
-                let name =
-                    if i == 0 { format!("{id}.{word}") } else { format!("{id}.{}.{word}", main.id) };
+                let Some(from) = incoming[usize::from(line) - 1] else {
+                    continue;
+                };
+                let name = if i == 0 {
+                    format!("{id}.{word}")
+                } else {
+                    format!("{id}.{}.{word}", main.id)
+                };
                 let to = self.node(&name);
                 let branch = self.keyed(format!("{name} main"), from, to, Law::Contact);
                 self.switched(branch, device);
@@ -170,6 +234,17 @@ impl Builder<'_> {
                 first_main = Some(device);
             }
             self.buses.insert(main.id.clone(), bus);
+        }
+        if board.mains.is_empty() {
+            for &line in lines {
+                let word = line_word(lines, line);
+                let Some(from) = incoming[usize::from(line) - 1] else {
+                    continue;
+                };
+                let to = self.node(format!("{id}.{word}"));
+                self.keyed(format!("{id}.{word} main"), from, to, Law::Joint);
+                main_bus.lines[usize::from(line) - 1] = Some(to);
+            }
         }
         self.buses.insert(id.clone(), main_bus);
         let neutral = self.keyed(format!("{id}.main-neutral"), incoming_n, bar_n, Law::Joint);
@@ -200,9 +275,20 @@ impl Builder<'_> {
                 let law = self.run(conductor, false);
                 let earth = self.keyed(format!("{id}.main-earth"), bar_pe, top, law);
                 self.lifts(earth, &format!("{id}.main-earth"));
-                let ohms = self.params.declare(&path, earthing.electrode_ohms, None, self.knowledge)?;
+                let ohms =
+                    self.params
+                        .declare(&path, earthing.electrode_ohms, None, self.knowledge)?;
                 let soil = self.circuit.soil;
-                self.keyed(name, top, soil, Law::Param { ohms, factor: 1.0, gate: None });
+                self.keyed(
+                    name,
+                    top,
+                    soil,
+                    Law::Param {
+                        ohms,
+                        factor: 1.0,
+                        gate: None,
+                    },
+                );
             }
         }
         if let Some(&first) = lines.first()
@@ -220,15 +306,19 @@ impl Builder<'_> {
 
     /// Incoming lines and neutral of a board on the line side of its main switch, and its lines.
     #[allow(clippy::type_complexity)]
-    fn feed(&mut self, board: &Board) -> Result<([Option<usize>; 3], usize, &'static [u8]), NetworkError> {
+    fn feed(
+        &mut self,
+        board: &Board,
+    ) -> Result<([Option<usize>; 3], usize, &'static [u8]), NetworkError> {
         let id = &board.id;
         let mut incoming = [None; 3];
         match &board.feed {
             Feed::Service => {
                 let lines = self.site_lines();
                 for &line in lines {
-                    incoming[usize::from(line) - 1] =
-                        self.circuit.node(&format!("service.{}", line_word(lines, line)));
+                    incoming[usize::from(line) - 1] = self
+                        .circuit
+                        .node(&format!("service.{}", line_word(lines, line)));
                 }
                 let n = self.node("service.N");
                 if self.site.supply.system == System::TnS {
@@ -238,13 +328,22 @@ impl Builder<'_> {
                 }
                 Ok((incoming, n, lines))
             }
-            Feed::Submain { board: from, rcd, breaker, phase, cable, metres } => {
+            Feed::Submain {
+                board: from,
+                rcd,
+                breaker,
+                phase,
+                cable,
+                metres,
+            } => {
                 let parent = &self.site.boards[*from];
                 let bus_id = rcd.clone().unwrap_or_else(|| parent.id.clone());
                 let bus = self.bus(&bus_id)?;
                 let parent_pe = self.node(format!("{}.PE", parent.id));
-                let device =
-                    self.circuit.add_device(&format!("{id}.breaker"), DeviceKind::Breaker { amps: breaker.amps });
+                let device = self.circuit.add_device(
+                    &format!("{id}.breaker"),
+                    DeviceKind::Breaker { amps: breaker.amps },
+                );
                 let lines = phase.lines();
                 let law = |mm2: f64| self.cable(*metres, mm2, cable.metal);
                 let (live, earth) = (law(cable.mm2), cable.pe_mm2.map(law));
@@ -252,7 +351,9 @@ impl Builder<'_> {
                 for &line in lines {
                     let word = line_word(lines, line);
                     let Some(from) = bus.lines[usize::from(line) - 1] else {
-                        return Err(NetworkError::Bad(format!("board {id} takes L{line} from bars without it")));
+                        return Err(NetworkError::Bad(format!(
+                            "board {id} takes L{line} from bars without it"
+                        )));
                     };
                     let branch = self.landed(id, &word, "feed.", from);
                     self.switched(branch, device);
@@ -280,7 +381,13 @@ impl Builder<'_> {
     }
 
     fn cable(&self, metres: f64, mm2: f64, metal: Metal) -> Law {
-        Law::Cable { metres, mm2, metal, scale: self.params.id("cable.length_factor"), reactive: true }
+        Law::Cable {
+            metres,
+            mm2,
+            metal,
+            scale: self.params.id("cable.length_factor"),
+            reactive: true,
+        }
     }
 
     /// The end of a conductor where it lands on a bar: `c1.N@board`, from the bar to `c1.N`.
@@ -300,7 +407,8 @@ impl Builder<'_> {
     }
 
     fn leak(&mut self, a: usize, b: usize, metres: f64, farads: f64) {
-        self.circuit.add_branch(None, a, b, Law::Insulation { metres, farads });
+        self.circuit
+            .add_branch(None, a, b, Law::Insulation { metres, farads });
     }
 
     fn insulate(&mut self, places: &[(usize, usize, usize)], metres: f64) {
@@ -311,11 +419,14 @@ impl Builder<'_> {
     }
 
     fn bus(&self, id: &str) -> Result<Bus, NetworkError> {
-        self.buses.get(id).copied().ok_or_else(|| NetworkError::UnknownPlace {
-            what: "bar",
-            name: id.to_owned(),
-            nearest: Vec::new(),
-        })
+        self.buses
+            .get(id)
+            .copied()
+            .ok_or_else(|| NetworkError::UnknownPlace {
+                what: "bar",
+                name: id.to_owned(),
+                nearest: Vec::new(),
+            })
     }
 
     fn rcds(&mut self, board: &Board, main: Bus, lines: &'static [u8]) -> Result<(), NetworkError> {
@@ -345,7 +456,11 @@ impl Builder<'_> {
                     rcd.amps,
                     self.knowledge,
                 )?;
-                let row = if rcd.delayed { "trip_seconds_delayed" } else { "trip_seconds" };
+                let row = if rcd.delayed {
+                    "delayed_trip_seconds"
+                } else {
+                    "trip_seconds"
+                };
                 let trip_seconds = self.params.declare_scaled(
                     &format!("{}.trip_seconds", rcd.id),
                     row,
@@ -365,11 +480,16 @@ impl Builder<'_> {
                     },
                 );
                 let base = format!("{}.{}", board.id, rcd.id);
-                let mut bus = Bus { lines: [None; 3], n: self.node(format!("{base}.N")) };
+                let mut bus = Bus {
+                    lines: [None; 3],
+                    n: self.node(format!("{base}.N")),
+                };
                 let mut load = Vec::new();
                 for &line in &own {
                     let word = line_word(&own, line);
-                    let Some(up) = from.lines[usize::from(line) - 1] else { continue };
+                    let Some(up) = from.lines[usize::from(line) - 1] else {
+                        continue;
+                    };
                     let node = self.node(format!("{base}.{word}"));
                     let branch = self.keyed(format!("{base}.{word}"), up, node, Law::Contact);
                     self.switched(branch, device);
@@ -389,7 +509,10 @@ impl Builder<'_> {
                 self.buses.insert(rcd.id.clone(), bus);
             }
             if waiting.len() == before {
-                return Err(NetworkError::Bad(format!("the RCDs of {} feed each other in a ring", board.id)));
+                return Err(NetworkError::Bad(format!(
+                    "the RCDs of {} feed each other in a ring",
+                    board.id
+                )));
             }
             left = waiting;
         }
@@ -398,9 +521,17 @@ impl Builder<'_> {
 
     /// The line of a two-pole RCD on three phases: that of the first circuit that hangs on it.
     fn rcd_line(&self, board: &Board, rcd: &str, lines: &[u8]) -> u8 {
-        let first = board.circuits.iter().find(|c| c.rcd.as_deref() == Some(rcd)).map(|c| c.phase);
+        let first = board
+            .circuits
+            .iter()
+            .find(|c| c.rcd.as_deref() == Some(rcd))
+            .map(|c| c.phase);
         let fed = self.site.boards.iter().find_map(|b| match &b.feed {
-            Feed::Submain { rcd: Some(r), phase, .. } if r == rcd => Some(*phase),
+            Feed::Submain {
+                rcd: Some(r),
+                phase,
+                ..
+            } if r == rcd => Some(*phase),
             _ => None,
         });
         match first.or(fed) {
@@ -418,16 +549,24 @@ impl Builder<'_> {
         let id = &circuit.id;
         let bus = match &circuit.rcd {
             Some(rcd) => self.bus(rcd)?,
-            None => self.bus(&circuit.main).or_else(|_| self.bus(&board.id))?,
+            None => match &circuit.main {
+                Some(main) => self.bus(main)?,
+                None => self.bus(&board.id)?,
+            },
         };
-        let device = self
-            .circuit
-            .add_device(&format!("{id}.breaker"), DeviceKind::Breaker { amps: circuit.breaker.amps });
+        let device = self.circuit.add_device(
+            &format!("{id}.breaker"),
+            DeviceKind::Breaker {
+                amps: circuit.breaker.amps,
+            },
+        );
         let lines = circuit.phase.lines();
         for &line in lines {
             let word = line_word(lines, line);
             let Some(from) = bus.lines[usize::from(line) - 1] else {
-                return Err(NetworkError::Bad(format!("circuit {id} takes L{line} from bars without it")));
+                return Err(NetworkError::Bad(format!(
+                    "circuit {id} takes L{line} from bars without it"
+                )));
             };
             let branch = self.landed(id, &word, "", from);
             self.switched(branch, device);
@@ -440,12 +579,16 @@ impl Builder<'_> {
         for (i, point) in circuit.points.iter().enumerate() {
             let (parent, start) = match point.from {
                 None => (id.clone(), 0.0),
-                Some(from) => (format!("{id}.{}", circuit.points[from].id), circuit.points[from].metres),
+                Some(from) => (
+                    format!("{id}.{}", circuit.points[from].id),
+                    circuit.points[from].metres,
+                ),
             };
             let metres = point.metres - start;
             let name = format!("{id}.{}", point.id);
-            let split =
-                point.from.map(|from| format!("{id}.{}.split", circuit.points[from].id));
+            let split = point
+                .from
+                .map(|from| format!("{id}.{}.split", circuit.points[from].id));
             let words: Vec<String> = lines
                 .iter()
                 .map(|&line| line_word(lines, line))
@@ -455,7 +598,11 @@ impl Builder<'_> {
             for word in &words {
                 let from = self.node(format!("{parent}.{word}"));
                 let to = self.node(format!("{name}.{word}"));
-                let mm2 = if word == "PE" { circuit.cable.pe_mm2.unwrap_or(circuit.cable.mm2) } else { circuit.cable.mm2 };
+                let mm2 = if word == "PE" {
+                    circuit.cable.pe_mm2.unwrap_or(circuit.cable.mm2)
+                } else {
+                    circuit.cable.mm2
+                };
                 let law = self.cable(metres, mm2, circuit.cable.metal);
                 let branch = self.keyed(format!("into {name}.{word}"), from, to, law);
                 if let Some(split) = &split {
@@ -486,9 +633,18 @@ impl Builder<'_> {
             .filter(|p| p.from == Some(index))
             .map(|p| (p.metres - circuit.points[index].metres) / 2.0)
             .sum();
-        let here = half + children + if circuit.points[index].from.is_none() { half } else { 0.0 };
+        let here = half
+            + children
+            + if circuit.points[index].from.is_none() {
+                half
+            } else {
+                0.0
+            };
         let n = self.node(format!("{name}.N"));
-        let pe = words.iter().any(|w| w == "PE").then(|| self.node(format!("{name}.PE")));
+        let pe = words
+            .iter()
+            .any(|w| w == "PE")
+            .then(|| self.node(format!("{name}.PE")));
         for word in words.iter().filter(|w| w.starts_with('L')) {
             let line = self.node(format!("{name}.{word}"));
             self.leak(line, n, here, 0.5);
@@ -507,7 +663,9 @@ impl Builder<'_> {
     }
 
     fn bonds(&mut self) -> Result<(), NetworkError> {
-        let Some(main) = self.site.boards.get(self.site.main_board) else { return Ok(()) };
+        let Some(main) = self.site.boards.get(self.site.main_board) else {
+            return Ok(());
+        };
         let bar = self.node(format!("{}.PE", main.id));
         let soil = self.circuit.soil;
         let street = self.node("street.N");
@@ -517,18 +675,48 @@ impl Builder<'_> {
             let law = self.run(bond.conductor, false);
             let branch = self.keyed(format!("{id}.bond"), bar, pipe, law);
             self.lifts(branch, &format!("{id}.bond"));
-            let ohms = self.params.declare(&format!("{id}.pipe_ohms"), bond.pipe_ohms, None, self.knowledge)?;
-            self.keyed(format!("{id}.pipe"), pipe, soil, Law::Param { ohms, factor: 1.0, gate: None });
+            let ohms = self.params.declare(
+                &format!("{id}.pipe_ohms"),
+                bond.pipe_ohms,
+                None,
+                self.knowledge,
+            )?;
+            self.keyed(
+                format!("{id}.pipe"),
+                pipe,
+                soil,
+                Law::Param {
+                    ohms,
+                    factor: 1.0,
+                    gate: None,
+                },
+            );
             if bond.street_metal != Some(false) {
-                let ohms =
-                    self.params.declare(&format!("{id}.street_ohms"), bond.street_ohms, None, self.knowledge)?;
-                let given = if bond.street_metal == Some(true) { Given::Value(1.0) } else { Given::Unknown };
-                let gate = self.params.declare_switch(&format!("{id}.street_metal"), given, self.knowledge)?;
+                let ohms = self.params.declare(
+                    &format!("{id}.street_ohms"),
+                    bond.street_ohms,
+                    None,
+                    self.knowledge,
+                )?;
+                let given = if bond.street_metal == Some(true) {
+                    Given::Value(1.0)
+                } else {
+                    Given::Unknown
+                };
+                let gate = self.params.declare_switch(
+                    &format!("{id}.street_metal"),
+                    given,
+                    self.knowledge,
+                )?;
                 self.keyed(
                     format!("{id}.street"),
                     pipe,
                     street,
-                    Law::Param { ohms, factor: 1.0, gate: Some(gate) },
+                    Law::Param {
+                        ohms,
+                        factor: 1.0,
+                        gate: Some(gate),
+                    },
                 );
             }
         }
@@ -540,11 +728,18 @@ impl Builder<'_> {
             let board = &self.site.boards[eq.at.board];
             let circuit = &board.circuits[eq.at.circuit];
             let point = format!("{}.{}", circuit.id, circuit.points[eq.at.point].id);
-            let row = self.knowledge.equipment(&eq.kind).or_else(|| self.knowledge.equipment("other"));
+            let row = self
+                .knowledge
+                .equipment(&eq.kind)
+                .or_else(|| self.knowledge.equipment("other"));
             let Some(row) = row else {
-                return Err(NetworkError::Bad(format!("knowledge has no equipment row for {}", eq.kind)));
+                return Err(NetworkError::Bad(format!(
+                    "knowledge has no equipment row for {}",
+                    eq.kind
+                )));
             };
-            let (row_watts, row_pf, row_leak, row_on) = (row.watts, row.power_factor, row.leak_farads, row.on);
+            let (row_watts, row_pf, row_leak, row_on) =
+                (row.watts, row.power_factor, row.leak_farads, row.on);
             let (electronics, insulation) = (row.electronics, row.insulation_ohms);
             let watts = self.params.declare_near(
                 &format!("{}.watts", eq.id),
@@ -552,11 +747,21 @@ impl Builder<'_> {
                 row_watts,
                 self.knowledge,
             )?;
-            let power_factor =
-                self.params.declare_near(&format!("{}.power_factor", eq.id), Given::Unknown, row_pf, self.knowledge)?;
-            let farads =
-                self.params.declare_near(&format!("{}.leak_farads", eq.id), Given::Unknown, row_leak, self.knowledge)?;
-            let ohms = self.params.declare_insulation(&format!("{}.insulation_ohms", eq.id), insulation);
+            let power_factor = self.params.declare_near(
+                &format!("{}.power_factor", eq.id),
+                Given::Unknown,
+                row_pf,
+                self.knowledge,
+            )?;
+            let farads = self.params.declare_near(
+                &format!("{}.leak_farads", eq.id),
+                Given::Unknown,
+                row_leak,
+                self.knowledge,
+            )?;
+            let ohms = self
+                .params
+                .declare_insulation(&format!("{}.insulation_ohms", eq.id), insulation);
             let on = self.params.declare_on(&format!("{}.on", eq.id), row_on);
             let frame = self.node(format!("{}.frame", eq.id));
             let lines = circuit.phase.lines();
@@ -569,7 +774,13 @@ impl Builder<'_> {
                     None,
                     node,
                     n,
-                    Law::Load { watts, power_factor, share, electronics, part: 1.0 },
+                    Law::Load {
+                        watts,
+                        power_factor,
+                        share,
+                        electronics,
+                        part: 1.0,
+                    },
                 );
                 self.circuit.branches[load].needs = Needs::On(index);
                 loads.push(load);
@@ -586,13 +797,29 @@ impl Builder<'_> {
                 self.circuit.add_branch(None, frame, pipe, Law::Joint);
             }
             self.circuit.item_ids.insert(eq.id.clone(), index);
-            self.circuit.items.push(Item { id: eq.id.clone(), plug: eq.plug, on, point, loads, frame });
+            self.circuit.items.push(Item {
+                id: eq.id.clone(),
+                plug: eq.plug,
+                on,
+                point,
+                loads,
+                frame,
+            });
         }
         Ok(())
     }
 
-    fn side(&mut self, live: usize, frame: usize, farads: super::ParamId, ohms: super::ParamId, item: usize) {
-        let leak = self.circuit.add_branch(None, live, frame, Law::Leak { farads, ohms });
+    fn side(
+        &mut self,
+        live: usize,
+        frame: usize,
+        farads: super::ParamId,
+        ohms: super::ParamId,
+        item: usize,
+    ) {
+        let leak = self
+            .circuit
+            .add_branch(None, live, frame, Law::Leak { farads, ohms });
         self.circuit.branches[leak].needs = Needs::Plugged(item);
     }
 
@@ -609,24 +836,47 @@ impl Builder<'_> {
                 }
                 SourcePlace::Point(p) => {
                     let circuit = &self.site.boards[p.board].circuits[p.circuit];
-                    (format!("{}.{}", circuit.id, circuit.points[p.point].id), circuit.phase.lines())
+                    (
+                        format!("{}.{}", circuit.id, circuit.points[p.point].id),
+                        circuit.phase.lines(),
+                    )
                 }
             };
-            let watts =
-                self.params.declare_near(&format!("{}.watts", source.id), Given::Unknown, source.watts, self.knowledge)?;
+            let watts = self.params.declare_near(
+                &format!("{}.watts", source.id),
+                Given::Unknown,
+                source.watts,
+                self.knowledge,
+            )?;
             let n = self.node(format!("{base}.N"));
             let pe = self.node(format!("{base}.PE"));
             self.circuit.terminals.insert(format!("{}.N", source.id), n);
-            self.circuit.terminals.insert(format!("{}.PE", source.id), pe);
+            self.circuit
+                .terminals
+                .insert(format!("{}.PE", source.id), pe);
             for &line in lines {
                 let word = line_word(lines, line);
                 let node = self.node(format!("{base}.{word}"));
-                self.circuit.terminals.insert(format!("{}.{word}", source.id), node);
-                let feed =
-                    self.circuit.add_branch(None, node, n, Law::FeedIn { watts, share: 1.0 / lines.len() as f64 });
+                self.circuit
+                    .terminals
+                    .insert(format!("{}.{word}", source.id), node);
+                let feed = self.circuit.add_branch(
+                    None,
+                    node,
+                    n,
+                    Law::FeedIn {
+                        watts,
+                        share: 1.0 / lines.len() as f64,
+                    },
+                );
                 self.circuit.branches[feed].needs = Needs::SourceOn(index);
                 let emf = self.node(format!("{}.emf.{word}", source.id));
-                self.circuit.emfs.push(Emf { plus: emf, minus: n, line, source: Some(index) });
+                self.circuit.emfs.push(Emf {
+                    plus: emf,
+                    minus: n,
+                    line,
+                    source: Some(index),
+                });
                 let inner = self.circuit.add_branch(None, emf, node, Law::Ohms(0.3));
                 self.circuit.branches[inner].needs = Needs::SourceBackup(index);
             }

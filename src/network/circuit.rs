@@ -246,7 +246,13 @@ impl Circuit {
     }
 
     /// Adds a branch.
-    pub(super) fn add_branch(&mut self, key: Option<String>, a: usize, b: usize, law: Law) -> usize {
+    pub(super) fn add_branch(
+        &mut self,
+        key: Option<String>,
+        a: usize,
+        b: usize,
+        law: Law,
+    ) -> usize {
         let index = self.branches.len();
         if let Some(key) = &key {
             self.keys.insert(key.clone(), index);
@@ -268,7 +274,11 @@ impl Circuit {
     /// Adds a device, through no branch yet.
     pub(super) fn add_device(&mut self, id: &str, kind: DeviceKind) -> usize {
         let index = self.devices.len();
-        self.devices.push(Device { id: id.to_owned(), kind, through: Vec::new() });
+        self.devices.push(Device {
+            id: id.to_owned(),
+            kind,
+            through: Vec::new(),
+        });
         self.device_ids.insert(id.to_owned(), index);
         index
     }

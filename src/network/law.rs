@@ -80,10 +80,13 @@ pub struct Values<'a> {
     pub common: &'a Common,
 }
 
+/// Below this, Ω, a branch is a wire: its current follows from Kirchhoff's law, not from its drop.
+const IDEAL_OHMS: f64 = 1e-9;
+
 fn impedance(r: f64, x: f64) -> Link {
     if r.is_infinite() {
         Link::Open
-    } else if r == 0.0 && x == 0.0 {
+    } else if r < IDEAL_OHMS && x.abs() < IDEAL_OHMS {
         Link::Ideal
     } else {
         let z = Complex64::new(r, x);
@@ -92,12 +95,18 @@ fn impedance(r: f64, x: f64) -> Link {
 }
 
 fn admittance(y: Complex64) -> Link {
-    if y.re == 0.0 && y.im == 0.0 { Link::Open } else { Link::Through(y) }
+    if y.re == 0.0 && y.im == 0.0 {
+        Link::Open
+    } else {
+        Link::Through(y)
+    }
 }
 
 /// Whether a branch conducts in this switching state, as far as devices, ends and needs go.
 fn conducts(circuit: &Circuit, branch: &Branch, sw: &Switching, theta: &[f64]) -> bool {
-    if branch.devices.iter().any(|&d| sw.device_open[d]) || branch.ends.iter().any(|&e| sw.end_lifted[e]) {
+    if branch.devices.iter().any(|&d| sw.device_open[d])
+        || branch.ends.iter().any(|&e| sw.end_lifted[e])
+    {
         return false;
     }
     match branch.needs {
@@ -127,15 +136,27 @@ pub fn link(circuit: &Circuit, index: usize, sw: &Switching, values: Values, kin
         impedance(ohms, 0.0)
     } else {
         match &branch.law {
-            Law::Cable { metres, mm2, metal, scale, reactive } => {
+            Law::Cable {
+                metres,
+                mm2,
+                metal,
+                scale,
+                reactive,
+            } => {
                 let length = metres * scale.map_or(1.0, |s| theta[s.0]);
                 let alpha = match metal {
                     Metal::Copper => 0.00393,
                     Metal::Aluminium => 0.00403,
                 };
-                let r = length * ohms_per_metre(*mm2, *metal) * (1.0 + alpha * (theta[common.celsius.0] - 20.0))
+                let r = length
+                    * ohms_per_metre(*mm2, *metal)
+                    * (1.0 + alpha * (theta[common.celsius.0] - 20.0))
                     + theta[common.joint.0];
-                let x = if ac && *reactive { length * theta[common.reactance.0] } else { 0.0 };
+                let x = if ac && *reactive {
+                    length * theta[common.reactance.0]
+                } else {
+                    0.0
+                };
                 impedance(r, x)
             }
             Law::Joint => impedance(theta[common.joint.0], 0.0),
@@ -156,15 +177,28 @@ pub fn link(circuit: &Circuit, index: usize, sw: &Switching, values: Values, kin
             Law::Insulation { metres, farads } => {
                 let length = metres.max(0.0);
                 let insulation = theta[common.insulation.0];
-                let g = if *farads >= 1.0 && insulation.is_finite() { length / insulation } else { 0.0 };
-                admittance(Complex64::new(g, omega * theta[common.farads.0] * farads * length))
+                let g = if *farads >= 1.0 && insulation.is_finite() {
+                    length / insulation
+                } else {
+                    0.0
+                };
+                admittance(Complex64::new(
+                    g,
+                    omega * theta[common.farads.0] * farads * length,
+                ))
             }
             Law::Leak { farads, ohms } => {
                 let ohms = theta[ohms.0];
                 let g = if ohms.is_finite() { 1.0 / ohms } else { 0.0 };
                 admittance(Complex64::new(g, omega * theta[farads.0]))
             }
-            Law::Load { watts, power_factor, share, electronics, part } => {
+            Law::Load {
+                watts,
+                power_factor,
+                share,
+                electronics,
+                part,
+            } => {
                 let watts = theta[watts.0] * share;
                 let pf = theta[power_factor.0].clamp(0.05, 1.0);
                 let tan = (1.0 - pf * pf).sqrt() / pf;
@@ -179,7 +213,10 @@ pub fn link(circuit: &Circuit, index: usize, sw: &Switching, values: Values, kin
             }
             Law::FeedIn { watts, share } => {
                 if ac {
-                    admittance(Complex64::new(-theta[watts.0] * share / (230.0 * 230.0), 0.0))
+                    admittance(Complex64::new(
+                        -theta[watts.0] * share / (230.0 * 230.0),
+                        0.0,
+                    ))
                 } else {
                     Link::Open
                 }

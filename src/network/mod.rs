@@ -75,7 +75,11 @@ pub enum NetworkError {
 }
 
 fn near(names: &[String]) -> String {
-    if names.is_empty() { String::new() } else { format!("; nearest: {}", names.join(", ")) }
+    if names.is_empty() {
+        String::new()
+    } else {
+        format!("; nearest: {}", names.join(", "))
+    }
 }
 
 /// A site's sound circuit with its parameters.
@@ -96,7 +100,11 @@ impl Network {
     /// A row that knowledge lacks; RCDs that feed each other.
     pub fn new(site: &Site, knowledge: &Knowledge) -> Result<Self, NetworkError> {
         let (circuit, params, common) = build::build(site, knowledge)?;
-        Ok(Self { circuit, params, common })
+        Ok(Self {
+            circuit,
+            params,
+            common,
+        })
     }
 
     /// The circuit under edits.
@@ -114,21 +122,29 @@ impl Network {
     ///
     /// # Errors
     /// A path that this site does not have; a value that is negative or not a number.
-    pub fn point_values(&self, overrides: &BTreeMap<String, Option<f64>>) -> Result<Vec<f64>, NetworkError> {
+    pub fn point_values(
+        &self,
+        overrides: &BTreeMap<String, Option<f64>>,
+    ) -> Result<Vec<f64>, NetworkError> {
         let mut theta = self.params.points();
         for (path, value) in overrides {
-            let id = self.params.id(path).ok_or_else(|| NetworkError::UnknownPlace {
-                what: "parameter",
-                name: path.clone(),
-                nearest: crate::quantity::suggest::nearest(
-                    path,
-                    self.params.by_path.keys().map(String::as_str),
-                    3,
-                ),
-            })?;
+            let id = self
+                .params
+                .id(path)
+                .ok_or_else(|| NetworkError::UnknownPlace {
+                    what: "parameter",
+                    name: path.clone(),
+                    nearest: crate::quantity::suggest::nearest(
+                        path,
+                        self.params.by_path.keys().map(String::as_str),
+                        3,
+                    ),
+                })?;
             let value = value.unwrap_or(f64::INFINITY);
             if value.is_nan() || (value < 0.0 && path != "cable.celsius") {
-                return Err(NetworkError::Bad(format!("{path} of {value}: give a number from zero up")));
+                return Err(NetworkError::Bad(format!(
+                    "{path} of {value}: give a number from zero up"
+                )));
             }
             theta[id.0] = value;
         }
@@ -152,8 +168,17 @@ impl Network {
         let theta = self.point_values(overrides)?;
         let sw = circuit.switching(setup, Unnamed::Off)?;
         let probe = circuit.probe(hookup, &setup.on)?;
-        let values = Values { theta: &theta, common: &self.common };
-        let solver = ExactSolver { circuit: &circuit, values };
+        let values = Values {
+            theta: &theta,
+            common: &self.common,
+        };
+        let solver = ExactSolver {
+            circuit: &circuit,
+            values,
+        };
         Ok(read(&solver, &probe, &sw, protection))
     }
 }
+
+#[cfg(test)]
+mod tests;

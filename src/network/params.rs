@@ -4,6 +4,7 @@ use std::collections::BTreeMap;
 
 use super::NetworkError;
 use crate::knowledge::{Knowledge, Prior};
+use crate::numeric::dist::{self, Clip};
 use crate::numeric::special;
 use crate::site::{Given, Site, System};
 
@@ -39,22 +40,44 @@ pub fn median(prior: &Prior) -> f64 {
         Prior::Lognormal { median, .. } => median,
         Prior::Uniform { low, high } => (low + high) / 2.0,
         Prior::Switch { p } => f64::from(u8::from(p > 0.5)),
+        Prior::Either {
+            p,
+            ref lower,
+            ref upper,
+        } => median(if p > 0.5 { lower } else { upper }),
     }
 }
 
 /// The value of a prior at a standard normal deviate `z` (its quantile at Φ(z)), clipped.
 pub fn at_normal(prior: &Prior, z: f64) -> f64 {
-    let clip = |x: f64, low: Option<f64>, high: Option<f64>| {
-        x.max(low.unwrap_or(f64::NEG_INFINITY)).min(high.unwrap_or(f64::INFINITY))
-    };
     match *prior {
         Prior::Fixed { value } => value,
-        Prior::Normal { mean, sd, low, high } => clip(mean + sd * z, low, high),
-        Prior::Lognormal { median, gsd, low, high } => {
-            clip(median * special::exp(z * special::ln(gsd)), low, high)
-        }
-        Prior::Uniform { low, high } => low + (high - low) * special::normal_cdf(z),
+        Prior::Normal {
+            mean,
+            sd,
+            low,
+            high,
+        } => dist::normal(z, mean, sd, Clip::new(low, high)),
+        Prior::Lognormal {
+            median,
+            gsd,
+            low,
+            high,
+        } => dist::lognormal(z, median, gsd, Clip::new(low, high)),
+        Prior::Uniform { low, high } => dist::uniform(z, low, high),
         Prior::Switch { p } => f64::from(u8::from(special::normal_cdf(z) < p)),
+        Prior::Either {
+            p,
+            ref lower,
+            ref upper,
+        } => {
+            let u = special::normal_cdf(z);
+            if u < p {
+                at_normal(lower, special::normal_quantile(u / p))
+            } else {
+                at_normal(upper, special::normal_quantile((u - p) / (1.0 - p)))
+            }
+        }
     }
 }
 
@@ -62,15 +85,29 @@ pub fn at_normal(prior: &Prior, z: f64) -> f64 {
 fn given_prior(given: Given, unknown: &Prior, spread: f64) -> (Prior, f64) {
     match given {
         Given::Unknown => (unknown.clone(), median(unknown)),
-        Given::Value(value) if value > 0.0 => {
-            (Prior::Lognormal { median: value, gsd: spread, low: None, high: None }, value)
-        }
+        Given::Value(value) if value > 0.0 => (
+            Prior::Lognormal {
+                median: value,
+                gsd: spread,
+                low: None,
+                high: None,
+            },
+            value,
+        ),
         Given::Value(value) => (Prior::Fixed { value }, value),
         Given::Range(low, high) => {
             let mean = (low * high).sqrt();
             // The two ends stand two deviations out, and clip.
             let gsd = special::exp(special::ln((high / low).max(1.0 + 1e-9)) / 4.0);
-            (Prior::Lognormal { median: mean, gsd, low: Some(low), high: Some(high) }, mean)
+            (
+                Prior::Lognormal {
+                    median: mean,
+                    gsd,
+                    low: Some(low),
+                    high: Some(high),
+                },
+                mean,
+            )
         }
     }
 }
@@ -92,7 +129,11 @@ impl ParamTable {
             return id;
         }
         let id = ParamId(self.specs.len());
-        self.specs.push(ParamSpec { path: path.to_owned(), prior, point });
+        self.specs.push(ParamSpec {
+            path: path.to_owned(),
+            prior,
+            point,
+        });
         self.by_path.insert(path.to_owned(), id);
         id
     }
@@ -102,14 +143,17 @@ impl ParamTable {
         path: &str,
         system: Option<System>,
     ) -> Result<&'k crate::knowledge::ParameterRow, NetworkError> {
-        let system = system.map(|s| match s {
-            System::TnCS => "TN-C-S",
-            System::TnS => "TN-S",
-            System::Tt => "TT",
-        });
-        knowledge
-            .parameter(path, system)
-            .ok_or_else(|| NetworkError::Bad(format!("knowledge has no parameter row for {path}; add one")))
+        let system = match system {
+            Some(System::TnCS) => "TN-C-S",
+            Some(System::TnS) => "TN-S",
+            Some(System::Tt) => "TT",
+            None => "",
+        };
+        knowledge.parameter(path, system).ok_or_else(|| {
+            NetworkError::Bad(format!(
+                "knowledge has no parameter row for {path}; add one"
+            ))
+        })
     }
 
     /// A parameter with a row of knowledge and, perhaps, a number of the site file.
@@ -133,7 +177,10 @@ impl ParamTable {
         scale: f64,
         knowledge: &Knowledge,
     ) -> Result<ParamId, NetworkError> {
-        let prior = scaled(&Self::row(knowledge, &format!("*.{row}"), None)?.prior, scale);
+        let prior = scaled(
+            &Self::row(knowledge, &format!("*.{row}"), None)?.prior,
+            scale,
+        );
         let point = median(&prior);
         Ok(self.add(path, prior, point))
     }
@@ -161,7 +208,16 @@ impl ParamTable {
     /// Insulation of equipment to its frame, each side, Ω; `predict` takes it as perfect, since the
     /// contract's circuit has none.
     pub(super) fn declare_insulation(&mut self, path: &str, median: f64) -> ParamId {
-        self.add(path, Prior::Lognormal { median, gsd: 4.0, low: None, high: None }, f64::INFINITY)
+        self.add(
+            path,
+            Prior::Lognormal {
+                median,
+                gsd: 4.0,
+                low: None,
+                high: None,
+            },
+            f64::INFINITY,
+        )
     }
 
     /// Equipment on or off as found; `predict` takes it as off.
@@ -190,20 +246,38 @@ impl ParamTable {
 fn scaled(prior: &Prior, k: f64) -> Prior {
     match prior.clone() {
         Prior::Fixed { value } => Prior::Fixed { value: value * k },
-        Prior::Normal { mean, sd, low, high } => Prior::Normal {
+        Prior::Normal {
+            mean,
+            sd,
+            low,
+            high,
+        } => Prior::Normal {
             mean: mean * k,
             sd: sd * k,
             low: low.map(|x| x * k),
             high: high.map(|x| x * k),
         },
-        Prior::Lognormal { median, gsd, low, high } => Prior::Lognormal {
+        Prior::Lognormal {
+            median,
+            gsd,
+            low,
+            high,
+        } => Prior::Lognormal {
             median: median * k,
             gsd,
             low: low.map(|x| x * k),
             high: high.map(|x| x * k),
         },
-        Prior::Uniform { low, high } => Prior::Uniform { low: low * k, high: high * k },
+        Prior::Uniform { low, high } => Prior::Uniform {
+            low: low * k,
+            high: high * k,
+        },
         Prior::Switch { p } => Prior::Switch { p },
+        Prior::Either { p, lower, upper } => Prior::Either {
+            p,
+            lower: Box::new(scaled(&lower, k)),
+            upper: Box::new(scaled(&upper, k)),
+        },
     }
 }
 
@@ -239,13 +313,24 @@ impl Common {
         knowledge: &Knowledge,
     ) -> Result<Self, NetworkError> {
         let supply = &site.supply;
-        let volts = if supply.volts_given { Given::Value(supply.volts) } else { Given::Unknown };
+        let volts = if supply.volts_given {
+            Given::Value(supply.volts)
+        } else {
+            Given::Unknown
+        };
         let volts = table.declare("supply.volts", volts, None, knowledge)?;
         table.specs[volts.0].point = supply.volts;
-        let network_ohms = table.declare("supply.network_ohms", supply.network_ohms, Some(supply.system), knowledge)?;
+        let network_ohms = table.declare(
+            "supply.network_ohms",
+            supply.network_ohms,
+            Some(supply.system),
+            knowledge,
+        )?;
         let x_over_r = table.add(
             "supply.network_x_over_r",
-            Prior::Fixed { value: supply.network_x_over_r },
+            Prior::Fixed {
+                value: supply.network_x_over_r,
+            },
             supply.network_x_over_r,
         );
         let mut plain = |path: &str| table.declare(path, Given::Unknown, None, knowledge);

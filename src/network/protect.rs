@@ -17,15 +17,21 @@ pub const BREAKER_MINUTE: f64 = 2.55;
 
 /// The residual current of an RCD, A: the phasor sum of what passes its core.
 pub fn residual(circuit: &Circuit, device: usize, phasors: &Phasors) -> Complex64 {
-    circuit.devices[device].through.iter().map(|&b| phasors.amps[b]).sum()
+    circuit.devices[device]
+        .through
+        .iter()
+        .map(|&b| phasors.amps[b])
+        .sum()
 }
 
 /// The threshold of an RCD, A; infinite if it never operates.
 pub fn threshold(circuit: &Circuit, device: usize, values: Values) -> Option<f64> {
     match &circuit.devices[device].kind {
-        DeviceKind::Rcd { trip_amps, trip_override, .. } => {
-            Some(trip_override.unwrap_or(values.theta[trip_amps.0]))
-        }
+        DeviceKind::Rcd {
+            trip_amps,
+            trip_override,
+            ..
+        } => Some(trip_override.unwrap_or(values.theta[trip_amps.0])),
         _ => None,
     }
 }
@@ -34,7 +40,11 @@ pub fn threshold(circuit: &Circuit, device: usize, values: Values) -> Option<f64
 pub fn strain(circuit: &Circuit, device: usize, phasors: &Phasors, values: Values) -> f64 {
     match &circuit.devices[device].kind {
         DeviceKind::Switch => 0.0,
-        DeviceKind::Rcd { trip_amps, trip_override, .. } => {
+        DeviceKind::Rcd {
+            trip_amps,
+            trip_override,
+            ..
+        } => {
             let threshold = trip_override.unwrap_or(values.theta[trip_amps.0]);
             special::abs(residual(circuit, device, phasors)) / threshold
         }
@@ -50,7 +60,10 @@ pub fn strain(circuit: &Circuit, device: usize, phasors: &Phasors, values: Value
 }
 
 fn delayed(circuit: &Circuit, device: usize) -> bool {
-    matches!(circuit.devices[device].kind, DeviceKind::Rcd { delayed: true, .. })
+    matches!(
+        circuit.devices[device].kind,
+        DeviceKind::Rcd { delayed: true, .. }
+    )
 }
 
 /// Solves with sources that lose the supply switched off (an inverter does not feed a dead net).
@@ -81,7 +94,13 @@ pub fn settle(solver: &dyn Solver, sw: &mut Switching, extra: &[Extra]) -> (Phas
         let circuit = solver.circuit();
         let worst = (0..circuit.devices.len())
             .filter(|&d| !sw.device_open[d])
-            .map(|d| (delayed(circuit, d), strain(circuit, d, &phasors, solver.values()), d))
+            .map(|d| {
+                (
+                    delayed(circuit, d),
+                    strain(circuit, d, &phasors, solver.values()),
+                    d,
+                )
+            })
             .filter(|c| c.1 >= 1.0)
             .min_by(|x, y| x.0.cmp(&y.0).then(y.1.total_cmp(&x.1)).then(x.2.cmp(&y.2)));
         match worst {

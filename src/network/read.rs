@@ -80,7 +80,9 @@ pub enum Probe {
 pub const LOW_Z_OHMS: f64 = 3000.0;
 
 fn line_of(circuit: &Circuit, place: &str) -> Result<usize, NetworkError> {
-    circuit.terminal(&format!("{place}.L")).or_else(|e| circuit.terminal(&format!("{place}.L1")).map_err(|_| e))
+    circuit
+        .terminal(&format!("{place}.L"))
+        .or_else(|e| circuit.terminal(&format!("{place}.L1")).map_err(|_| e))
 }
 
 impl Circuit {
@@ -90,8 +92,12 @@ impl Circuit {
             name.to_owned(),
             format!("{name} main"),
             format!("{name}@board"),
-            name.strip_suffix(".N").map(|b| format!("{b}.main-neutral")).unwrap_or_default(),
-            name.strip_suffix(".PE").map(|b| format!("{b}.incoming-pe")).unwrap_or_default(),
+            name.strip_suffix(".N")
+                .map(|b| format!("{b}.main-neutral"))
+                .unwrap_or_default(),
+            name.strip_suffix(".PE")
+                .map(|b| format!("{b}.incoming-pe"))
+                .unwrap_or_default(),
             name.replace(".feed.", ".") + "@board",
         ];
         for key in &candidates {
@@ -108,7 +114,12 @@ impl Circuit {
             .iter()
             .filter(|e| !e.ends_with(".split"))
             .map(|e| e.trim_end_matches("@board").to_owned())
-            .chain(self.keys.keys().filter(|k| k.starts_with("service.")).cloned())
+            .chain(
+                self.keys
+                    .keys()
+                    .filter(|k| k.starts_with("service."))
+                    .cloned(),
+            )
             .collect();
         Err(NetworkError::UnknownPlace {
             what: "place for a clamp",
@@ -124,7 +135,10 @@ impl Circuit {
     pub fn probe(&self, hookup: &Hookup, on: &[String]) -> Result<Probe, NetworkError> {
         let pair = |b: &[String; 2]| -> Result<[usize; 2], NetworkError> {
             if b[0] == b[1] {
-                return Err(NetworkError::Bad(format!("both probes are on {}: name two terminals", b[0])));
+                return Err(NetworkError::Bad(format!(
+                    "both probes are on {}: name two terminals",
+                    b[0]
+                )));
             }
             Ok([self.terminal(&b[0])?, self.terminal(&b[1])?])
         };
@@ -136,7 +150,9 @@ impl Circuit {
             let between = match at {
                 Some(at) => [line_of(self, at)?, self.terminal(&format!("{at}.PE"))?],
                 None => {
-                    let line = *load.first().ok_or_else(|| NetworkError::Bad(format!("{id} has no load terminals")))?;
+                    let line = *load
+                        .first()
+                        .ok_or_else(|| NetworkError::Bad(format!("{id} has no load terminals")))?;
                     let board = self.nodes[line].split('.').next().unwrap_or_default();
                     [line, self.terminal(&format!("{board}.PE"))?]
                 }
@@ -147,18 +163,32 @@ impl Circuit {
             Hookup::Volts { between, meter } => {
                 let omega = 2.0 * std::f64::consts::PI * self.hertz;
                 let (input, heavy) = match meter {
-                    None | Some(Meter::Named(MeterWord::HighZ)) => (Complex64::new(1e-7, omega * 100e-12), false),
-                    Some(Meter::Named(MeterWord::LowZ)) => (Complex64::new(1.0 / LOW_Z_OHMS, 0.0), true),
-                    Some(Meter::Ohms(r)) if *r > 0.0 && r.is_finite() => (Complex64::new(1.0 / r, 0.0), *r < 50e3),
+                    None | Some(Meter::Named(MeterWord::HighZ)) => {
+                        (Complex64::new(1e-7, omega * 100e-12), false)
+                    }
+                    Some(Meter::Named(MeterWord::LowZ)) => {
+                        (Complex64::new(1.0 / LOW_Z_OHMS, 0.0), true)
+                    }
+                    Some(Meter::Ohms(r)) if *r > 0.0 && r.is_finite() => {
+                        (Complex64::new(1.0 / r, 0.0), *r < 50e3)
+                    }
                     Some(Meter::Ohms(r)) => {
-                        return Err(NetworkError::Bad(format!("a meter of {r} Ω: give ohms above zero")));
+                        return Err(NetworkError::Bad(format!(
+                            "a meter of {r} Ω: give ohms above zero"
+                        )));
                     }
                 };
-                Probe::Volts { between: pair(between)?, input, heavy }
+                Probe::Volts {
+                    between: pair(between)?,
+                    input,
+                    heavy,
+                }
             }
             Hookup::Amps { around } => {
                 if around.is_empty() {
-                    return Err(NetworkError::Bad("a clamp around nothing: name a conductor".to_owned()));
+                    return Err(NetworkError::Bad(
+                        "a clamp around nothing: name a conductor".to_owned(),
+                    ));
                 }
                 let mut branches = Vec::new();
                 for name in around {
@@ -170,53 +200,89 @@ impl Circuit {
                 }
                 Probe::Amps { around: branches }
             }
-            Hookup::Insulation { between, test_volts } => {
+            Hookup::Insulation {
+                between,
+                test_volts,
+            } => {
                 if ![250.0, 500.0, 1000.0].contains(test_volts) {
-                    return Err(NetworkError::Bad(format!("{test_volts} V test: 250, 500 or 1000")));
+                    return Err(NetworkError::Bad(format!(
+                        "{test_volts} V test: 250, 500 or 1000"
+                    )));
                 }
                 let group = |names: &Vec<String>| -> Result<Vec<usize>, NetworkError> {
                     if names.is_empty() {
-                        return Err(NetworkError::Bad("an insulation test needs terminals on both sides".to_owned()));
+                        return Err(NetworkError::Bad(
+                            "an insulation test needs terminals on both sides".to_owned(),
+                        ));
                     }
                     names.iter().map(|n| self.terminal(n)).collect()
                 };
-                Probe::Insulation { between: [group(&between[0])?, group(&between[1])?] }
+                Probe::Insulation {
+                    between: [group(&between[0])?, group(&between[1])?],
+                }
             }
-            Hookup::Continuity { between } => Probe::Continuity { between: pair(between)? },
+            Hookup::Continuity { between } => Probe::Continuity {
+                between: pair(between)?,
+            },
             Hookup::Loop { between, amps } => {
                 let amps = amps.unwrap_or(10.0);
                 if !(amps > 0.0 && amps <= 100.0) {
-                    return Err(NetworkError::Bad(format!("a loop test of {amps} A: 0.015 or 10 is usual")));
+                    return Err(NetworkError::Bad(format!(
+                        "a loop test of {amps} A: 0.015 or 10 is usual"
+                    )));
                 }
-                Probe::Loop { between: pair(between)?, amps }
+                Probe::Loop {
+                    between: pair(between)?,
+                    amps,
+                }
             }
-            Hookup::TripTime { rcd: id, at, multiple, half_cycle: _ } => {
+            Hookup::TripTime {
+                rcd: id,
+                at,
+                multiple,
+                half_cycle: _,
+            } => {
                 if ![0.5, 1.0, 2.0, 5.0].contains(multiple) {
-                    return Err(NetworkError::Bad(format!("{multiple} times the rated current: 0.5, 1 or 5")));
+                    return Err(NetworkError::Bad(format!(
+                        "{multiple} times the rated current: 0.5, 1 or 5"
+                    )));
                 }
                 let (rcd, between) = rcd(id, at)?;
-                Probe::TripTime { rcd, between, multiple: *multiple }
+                Probe::TripTime {
+                    rcd,
+                    between,
+                    multiple: *multiple,
+                }
             }
             Hookup::Ramp { rcd: id, at } => {
                 let (rcd, between) = rcd(id, at)?;
                 Probe::Ramp { rcd, between }
             }
-            Hookup::Holds { device } => Probe::Holds { device: self.device(device)? },
+            Hookup::Holds { device } => Probe::Holds {
+                device: self.device(device)?,
+            },
             Hookup::Lamp { at } => {
-                let on = on
-                    .iter()
-                    .map(|id| {
-                        self.item_ids.get(id).copied().ok_or_else(|| NetworkError::UnknownPlace {
-                            what: "equipment",
-                            name: id.clone(),
-                            nearest: Vec::new(),
+                let on =
+                    on.iter()
+                        .map(|id| {
+                            self.item_ids.get(id).copied().ok_or_else(|| {
+                                NetworkError::UnknownPlace {
+                                    what: "equipment",
+                                    name: id.clone(),
+                                    nearest: Vec::new(),
+                                }
+                            })
                         })
-                    })
-                    .collect::<Result<_, _>>()?;
-                Probe::Lamp { between: [line_of(self, at)?, self.terminal(&format!("{at}.N"))?], on }
+                        .collect::<Result<_, _>>()?;
+                Probe::Lamp {
+                    between: [line_of(self, at)?, self.terminal(&format!("{at}.N"))?],
+                    on,
+                }
             }
             Hookup::Seen { .. } => {
-                return Err(NetworkError::Bad("what is seen does not follow from the circuit".to_owned()));
+                return Err(NetworkError::Bad(
+                    "what is seen does not follow from the circuit".to_owned(),
+                ));
             }
         })
     }
@@ -257,18 +323,30 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
             .collect()
     };
     let stake = |nodes: &[usize; 2]| -> f64 {
-        if nodes.contains(&circuit.soil) { solver.values().theta[solver.values().common.stake.0] } else { 0.0 }
+        if nodes.contains(&circuit.soil) {
+            solver.values().theta[solver.values().common.stake.0]
+        } else {
+            0.0
+        }
     };
     let mut unit = Unit::None;
     let outcome = match probe {
-        Probe::Volts { between, input, heavy } => {
+        Probe::Volts {
+            between,
+            input,
+            heavy,
+        } => {
             unit = Unit::Volt;
             settled(&mut sw, &[], &mut tripped);
             let [a, b] = *between;
             let lead = stake(between);
             let seen = Complex64::new(1.0, 0.0) / (Complex64::new(1.0, 0.0) / input + lead);
             let extra = Extra { a, b, y: seen };
-            let by_test = if *heavy { test_trips(&sw, extra) } else { Vec::new() };
+            let by_test = if *heavy {
+                test_trips(&sw, extra)
+            } else {
+                Vec::new()
+            };
             if by_test.is_empty() {
                 let p = protect::solve(solver, &mut sw, &[extra]);
                 let share = special::abs(seen / input);
@@ -285,18 +363,31 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
         }
         Probe::Insulation { between } => {
             unit = Unit::Ohm;
-            ohms(solver.impedance(&sw, &between[0], &between[1], Kind::Dc).map(|z| z.re))
+            ohms(
+                solver
+                    .impedance(&sw, &between[0], &between[1], Kind::Dc)
+                    .map(|z| z.re),
+            )
         }
         Probe::Continuity { between } => {
             unit = Unit::Ohm;
-            let z = solver.impedance(&sw, &between[..1], &between[1..], Kind::Dc).map(|z| z.re);
+            let z = solver
+                .impedance(&sw, &between[..1], &between[1..], Kind::Dc)
+                .map(|z| z.re);
             ohms(z.map(|z| z + stake(between)))
         }
         Probe::Loop { between, amps } => {
             unit = Unit::Ohm;
             settled(&mut sw, &[], &mut tripped);
             let [a, b] = *between;
-            let by_test = test_trips(&sw, Extra { a, b, y: Complex64::new(amps / 230.0, 0.0) });
+            let by_test = test_trips(
+                &sw,
+                Extra {
+                    a,
+                    b,
+                    y: Complex64::new(amps / 230.0, 0.0),
+                },
+            );
             if by_test.is_empty() {
                 let z = solver.impedance(&sw, &between[..1], &between[1..], Kind::Ac);
                 ohms(z.map(|z| special::abs(z + stake(between))))
@@ -305,14 +396,30 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
                 Outcome::Word(Word::Trips)
             }
         }
-        Probe::TripTime { rcd, between, multiple } => {
+        Probe::TripTime {
+            rcd,
+            between,
+            multiple,
+        } => {
             let p = settled(&mut sw, &[], &mut tripped);
-            let DeviceKind::Rcd { rated, trip_seconds, seconds_override, .. } = &circuit.devices[*rcd].kind else {
-                return Prediction { outcome: Outcome::Word(Word::NoTrip), unit, tripped: Vec::new() };
+            let DeviceKind::Rcd {
+                rated,
+                trip_seconds,
+                seconds_override,
+                ..
+            } = &circuit.devices[*rcd].kind
+            else {
+                return Prediction {
+                    outcome: Outcome::Word(Word::NoTrip),
+                    unit,
+                    tripped: Vec::new(),
+                };
             };
             let amps = multiple * rated;
             let trip = match tester(solver, *rcd, *between, &sw, &p) {
-                Some(t) if amps <= t.most * (1.0 + 1e-9) => special::abs(t.standing + t.transfer * amps) >= t.threshold,
+                Some(t) if amps <= t.most * (1.0 + 1e-9) => {
+                    special::abs(t.standing + t.transfer * amps) >= t.threshold
+                }
                 _ => false,
             };
             if trip && !sw.device_open[*rcd] {
@@ -320,7 +427,11 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
                 let at_rated = seconds_override.unwrap_or(solver.values().theta[trip_seconds.0]);
                 // Break times shorten with the multiple as the limits of IEC 61008-1 do (300 ms to
                 // about 100 ms in practice at 5 ×; trade.md A18, guess).
-                Outcome::Number(if *multiple >= 5.0 { at_rated / 3.0 } else { at_rated })
+                Outcome::Number(if *multiple >= 5.0 {
+                    at_rated / 3.0
+                } else {
+                    at_rated
+                })
             } else {
                 Outcome::Word(Word::NoTrip)
             }
@@ -365,8 +476,15 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
             })
         }
     };
-    let tripped = tripped.into_iter().map(|d| circuit.devices[d].id.clone()).collect();
-    Prediction { outcome, unit, tripped }
+    let tripped = tripped
+        .into_iter()
+        .map(|d| circuit.devices[d].id.clone())
+        .collect();
+    Prediction {
+        outcome,
+        unit,
+        tripped,
+    }
 }
 
 /// An RCD tester at its place: what the core sees of its current.
@@ -381,7 +499,13 @@ struct Tester {
     threshold: f64,
 }
 
-fn tester(solver: &dyn Solver, rcd: usize, between: [usize; 2], sw: &Switching, p: &Phasors) -> Option<Tester> {
+fn tester(
+    solver: &dyn Solver,
+    rcd: usize,
+    between: [usize; 2],
+    sw: &Switching,
+    p: &Phasors,
+) -> Option<Tester> {
     let [a, b] = between;
     let circuit = solver.circuit();
     let open = p.volts[a] - p.volts[b];
@@ -393,7 +517,11 @@ fn tester(solver: &dyn Solver, rcd: usize, between: [usize; 2], sw: &Switching, 
         Some(_) => f64::INFINITY,
         None => return None,
     };
-    let extra = Extra { a, b, y: Complex64::new(1e-4, 0.0) };
+    let extra = Extra {
+        a,
+        b,
+        y: Complex64::new(1e-4, 0.0),
+    };
     let with = solver.phasors(sw, &[extra]);
     let current = extra.y * (with.volts[a] - with.volts[b]);
     let standing = residual(circuit, rcd, p);
@@ -409,9 +537,17 @@ fn tester(solver: &dyn Solver, rcd: usize, between: [usize; 2], sw: &Switching, 
 }
 
 /// The tester's current at which `|standing + transfer · I|` meets the threshold, within 1.5 × IΔn.
-fn ramp(solver: &dyn Solver, rcd: usize, between: [usize; 2], sw: &Switching, p: &Phasors) -> Option<f64> {
+fn ramp(
+    solver: &dyn Solver,
+    rcd: usize,
+    between: [usize; 2],
+    sw: &Switching,
+    p: &Phasors,
+) -> Option<f64> {
     let t = tester(solver, rcd, between, sw, p)?;
-    let DeviceKind::Rcd { rated, .. } = solver.circuit().devices[rcd].kind else { return None };
+    let DeviceKind::Rcd { rated, .. } = solver.circuit().devices[rcd].kind else {
+        return None;
+    };
     let a = t.transfer.norm_sqr();
     let b = (t.standing * t.transfer.conj()).re;
     let c = t.standing.norm_sqr() - t.threshold * t.threshold;

@@ -28,7 +28,8 @@ impl Circuit {
     /// # Errors
     /// A branch or place that is not here; edits that contradict each other on one branch.
     pub fn rework(&mut self, edits: &[Edit]) -> Result<(), NetworkError> {
-        let moves = |e: &Edit| matches!(e, Edit::Swap { .. } | Edit::SwapService | Edit::Move { .. });
+        let moves =
+            |e: &Edit| matches!(e, Edit::Swap { .. } | Edit::SwapService | Edit::Move { .. });
         let mut touched: Vec<String> = Vec::new();
         for edit in edits {
             self.check_conflict(edit, &mut touched)?;
@@ -54,7 +55,9 @@ impl Circuit {
             Edit::Element { equipment, .. } => format!("the element of {equipment}"),
             Edit::TripAmps { rcd, .. } | Edit::DeadRcd { rcd } => format!("the threshold of {rcd}"),
             Edit::TripSeconds { rcd, .. } => format!("the time of {rcd}"),
-            Edit::Shunt { .. } | Edit::Capacitor { .. } | Edit::NetworkInjection { .. } => return Ok(()),
+            Edit::Shunt { .. } | Edit::Capacitor { .. } | Edit::NetworkInjection { .. } => {
+                return Ok(());
+            }
         };
         if touched.contains(&mark) {
             let branch = match edit {
@@ -77,7 +80,11 @@ impl Circuit {
                 let b = self.branch(branch)?;
                 self.branches[b].replaced = Some(*ohms);
             }
-            Edit::Shunt { between, ohms, when } => {
+            Edit::Shunt {
+                between,
+                ohms,
+                when,
+            } => {
                 let (a, b) = (self.terminal(&between[0])?, self.terminal(&between[1])?);
                 let branch = self.add_branch(None, a, b, Law::Ohms(*ohms));
                 if let Some(p) = when {
@@ -90,7 +97,11 @@ impl Circuit {
             }
             Edit::Swap { at, conductors } => self.swap(at, conductors)?,
             Edit::SwapService => {
-                let line = if self.keys.contains_key("service.L") { "service.L" } else { "service.L1" };
+                let line = if self.keys.contains_key("service.L") {
+                    "service.L"
+                } else {
+                    "service.L1"
+                };
                 let (l, n) = (self.branch(line)?, self.branch("service.N")?);
                 let a = self.branches[l].a;
                 self.branches[l].a = self.branches[n].a;
@@ -102,7 +113,11 @@ impl Circuit {
                 self.branches[b].a = node;
             }
             Edit::SourceVolts(volts) => self.volts_override = Some(*volts),
-            Edit::Element { equipment, position, ohms } => self.element(equipment, *position, *ohms)?,
+            Edit::Element {
+                equipment,
+                position,
+                ohms,
+            } => self.element(equipment, *position, *ohms)?,
             Edit::NetworkInjection { bond, ohms } => {
                 let from = self
                     .node("network.source.L")
@@ -121,10 +136,19 @@ impl Circuit {
         Ok(())
     }
 
-    fn set_rcd(&mut self, id: &str, amps: Option<f64>, seconds: Option<f64>) -> Result<(), NetworkError> {
+    fn set_rcd(
+        &mut self,
+        id: &str,
+        amps: Option<f64>,
+        seconds: Option<f64>,
+    ) -> Result<(), NetworkError> {
         let device = self.device(id)?;
         match &mut self.devices[device].kind {
-            DeviceKind::Rcd { trip_override, seconds_override, .. } => {
+            DeviceKind::Rcd {
+                trip_override,
+                seconds_override,
+                ..
+            } => {
                 *trip_override = amps.or(*trip_override);
                 *seconds_override = seconds.or(*seconds_override);
                 Ok(())
@@ -136,7 +160,10 @@ impl Circuit {
     /// Exchanges two conductors at a point's terminals: its equipment and probes see them exchanged,
     /// the cable that goes on does not.
     fn swap(&mut self, at: &str, conductors: &[String; 2]) -> Result<(), NetworkError> {
-        let names = [format!("{at}.{}", conductors[0]), format!("{at}.{}", conductors[1])];
+        let names = [
+            format!("{at}.{}", conductors[0]),
+            format!("{at}.{}", conductors[1]),
+        ];
         let (x, y) = (self.terminal(&names[0])?, self.terminal(&names[1])?);
         for branch in &mut self.branches {
             let of_point = match branch.needs {
@@ -162,23 +189,39 @@ impl Circuit {
     /// switch is in its line, so switched off it still leaks to the neutral's end.
     fn element(&mut self, id: &str, position: f64, ohms: f64) -> Result<(), NetworkError> {
         if !(0.0..=1.0).contains(&position) {
-            return Err(NetworkError::Bad(format!("a position of {position} along an element: it runs from 0 (L) to 1")));
+            return Err(NetworkError::Bad(format!(
+                "a position of {position} along an element: it runs from 0 (L) to 1"
+            )));
         }
-        let item = *self.item_ids.get(id).ok_or_else(|| NetworkError::UnknownPlace {
-            what: "equipment",
-            name: id.to_owned(),
-            nearest: nearest(id, self.item_ids.keys().map(String::as_str), 3),
-        })?;
-        let Some(&load) = self.items[item].loads.first() else { return Ok(()) };
+        let item = *self
+            .item_ids
+            .get(id)
+            .ok_or_else(|| NetworkError::UnknownPlace {
+                what: "equipment",
+                name: id.to_owned(),
+                nearest: nearest(id, self.item_ids.keys().map(String::as_str), 3),
+            })?;
+        let Some(&load) = self.items[item].loads.first() else {
+            return Ok(());
+        };
         let frame = self.items[item].frame;
         let (top, bottom, law) = {
             let b = &self.branches[load];
             (b.a, b.b, b.law.clone())
         };
         let share = |part: f64| match law.clone() {
-            Law::Load { watts, power_factor, share, .. } => {
-                Law::Load { watts, power_factor, share, electronics: false, part }
-            }
+            Law::Load {
+                watts,
+                power_factor,
+                share,
+                ..
+            } => Law::Load {
+                watts,
+                power_factor,
+                share,
+                electronics: false,
+                part,
+            },
             other => other,
         };
         let node = self.nodes.len();

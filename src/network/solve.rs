@@ -58,7 +58,8 @@ fn emf_volts(circuit: &Circuit, emf: &Emf, values: Values) -> Complex64 {
 }
 
 fn active(emf: &Emf, sw: &Switching) -> bool {
-    emf.source.is_none_or(|s| sw.sources[s] == SourceMode::Backup)
+    emf.source
+        .is_none_or(|s| sw.sources[s] == SourceMode::Backup)
 }
 
 /// Groups of kept nodes held together by ideal sources: group and offset of each kept node.
@@ -68,12 +69,18 @@ struct Groups {
     count: usize,
 }
 
-fn groups(circuit: &Circuit, map: &dyn Fn(usize) -> usize, emfs: &[(usize, usize, Complex64)]) -> Groups {
+fn groups(
+    circuit: &Circuit,
+    map: &dyn Fn(usize) -> usize,
+    emfs: &[(usize, usize, Complex64)],
+) -> Groups {
     let mut of: Vec<(usize, usize, Complex64)> = vec![(map(circuit.soil), 0, ZERO)];
     let mut count = 1;
     for &(plus, minus, volts) in emfs {
         let (plus, minus) = (map(plus), map(minus));
-        let found = |of: &[(usize, usize, Complex64)], n: usize| of.iter().find(|g| g.0 == n).map(|g| (g.1, g.2));
+        let found = |of: &[(usize, usize, Complex64)], n: usize| {
+            of.iter().find(|g| g.0 == n).map(|g| (g.1, g.2))
+        };
         let (group, base) = match found(&of, minus) {
             Some(g) => g,
             None => {
@@ -103,11 +110,18 @@ impl Groups {
         volts: &mut [Complex64],
     ) {
         let n = self.count;
-        let place = |node: usize| self.of.iter().find(|g| g.0 == node).map(|g| (g.1, if offsets { g.2 } else { ZERO }));
+        let place = |node: usize| {
+            self.of
+                .iter()
+                .find(|g| g.0 == node)
+                .map(|g| (g.1, if offsets { g.2 } else { ZERO }))
+        };
         let mut m = vec![vec![ZERO; n]; n];
         let mut rhs = vec![ZERO; n];
         for &(a, b, y) in between {
-            let (Some((ga, ea)), Some((gb, eb))) = (place(a), place(b)) else { continue };
+            let (Some((ga, ea)), Some((gb, eb))) = (place(a), place(b)) else {
+                continue;
+            };
             if ga == gb {
                 continue;
             }
@@ -159,7 +173,9 @@ impl Groups {
 }
 
 fn links(circuit: &Circuit, sw: &Switching, values: Values, kind: Kind) -> Vec<Link> {
-    (0..circuit.branches.len()).map(|i| link(circuit, i, sw, values, kind)).collect()
+    (0..circuit.branches.len())
+        .map(|i| link(circuit, i, sw, values, kind))
+        .collect()
 }
 
 /// Solves each question anew: exact to rounding, ideal branches and all.
@@ -177,7 +193,9 @@ struct Merged {
 
 impl Merged {
     fn new(nodes: usize) -> Self {
-        Self { root: (0..nodes).collect() }
+        Self {
+            root: (0..nodes).collect(),
+        }
     }
     fn find(&self, mut n: usize) -> usize {
         while self.root[n] != n {
@@ -334,7 +352,13 @@ impl ExactSolver<'_> {
                             continue;
                         }
                         let (a, b) = (c.branches[t].a, c.branches[t].b);
-                        let other = if a == n { b } else if b == n { a } else { continue };
+                        let other = if a == n {
+                            b
+                        } else if b == n {
+                            a
+                        } else {
+                            continue;
+                        };
                         if !seen.contains(&other) {
                             seen.push(other);
                         }
@@ -366,10 +390,18 @@ impl Wiring {
     /// Plans the elimination of a circuit.
     pub fn new(circuit: Circuit) -> Self {
         let edges: Vec<_> = circuit.branches.iter().map(|b| (b.a, b.b)).collect();
-        let emfs: Vec<_> = circuit.emfs.iter().map(|e| (e.plus, e.minus, ZERO)).collect();
+        let emfs: Vec<_> = circuit
+            .emfs
+            .iter()
+            .map(|e| (e.plus, e.minus, ZERO))
+            .collect();
         let kept = groups(&circuit, &|n| n, &emfs).kept();
         let pattern = Pattern::new(circuit.nodes.len(), &edges, &kept);
-        Self { circuit, pattern, kept }
+        Self {
+            circuit,
+            pattern,
+            kept,
+        }
     }
 }
 
@@ -394,11 +426,20 @@ pub struct QuickSolver<'a> {
 impl<'a> QuickSolver<'a> {
     /// A solver of this wiring at these values.
     pub fn new(wiring: &'a Wiring, values: Values<'a>) -> Self {
-        Self { wiring, values, factors: std::cell::RefCell::new(Vec::new()) }
+        Self {
+            wiring,
+            values,
+            factors: std::cell::RefCell::new(Vec::new()),
+        }
     }
 
     fn factor(&self, sw: &Switching, kind: Kind) -> std::rc::Rc<Factor> {
-        if let Some(f) = self.factors.borrow().iter().find(|f| f.kind == kind && f.sw == *sw) {
+        if let Some(f) = self
+            .factors
+            .borrow()
+            .iter()
+            .find(|f| f.kind == kind && f.sw == *sw)
+        {
             return f.clone();
         }
         let c = &self.wiring.circuit;
@@ -410,9 +451,19 @@ impl<'a> QuickSolver<'a> {
             })
             .collect();
         let folded = self.wiring.pattern.fold(&ys);
-        let volts_of = |e: &Emf| if kind == Kind::Ac && active(e, sw) { emf_volts(c, e, self.values) } else { ZERO };
+        let volts_of = |e: &Emf| {
+            if kind == Kind::Ac && active(e, sw) {
+                emf_volts(c, e, self.values)
+            } else {
+                ZERO
+            }
+        };
         // A source that does not run still joins its nodes here; its inner branch is open then.
-        let emfs: Vec<_> = c.emfs.iter().map(|e| (e.plus, e.minus, volts_of(e))).collect();
+        let emfs: Vec<_> = c
+            .emfs
+            .iter()
+            .map(|e| (e.plus, e.minus, volts_of(e)))
+            .collect();
         let groups = groups(c, &|n| n, &emfs);
         let between = self.wiring.pattern.between_kept(&folded);
         let mut base = vec![ZERO; c.nodes.len()];
@@ -420,7 +471,15 @@ impl<'a> QuickSolver<'a> {
             groups.solve(&between, None, true, &mut base);
             self.wiring.pattern.pull(&folded, None, &mut base);
         }
-        let factor = std::rc::Rc::new(Factor { sw: sw.clone(), kind, ys, folded, groups, base, between });
+        let factor = std::rc::Rc::new(Factor {
+            sw: sw.clone(),
+            kind,
+            ys,
+            folded,
+            groups,
+            base,
+            between,
+        });
         self.factors.borrow_mut().push(factor.clone());
         factor
     }
@@ -435,8 +494,11 @@ impl<'a> QuickSolver<'a> {
         let mut pushed_all = pushed;
         self.wiring.pattern.push(&f.folded, &mut pushed_all);
         let mut volts = vec![ZERO; n];
-        f.groups.solve(&f.between, Some(&pushed_all), false, &mut volts);
-        self.wiring.pattern.pull(&f.folded, Some(&pushed_all), &mut volts);
+        f.groups
+            .solve(&f.between, Some(&pushed_all), false, &mut volts);
+        self.wiring
+            .pattern
+            .pull(&f.folded, Some(&pushed_all), &mut volts);
         volts
     }
 }
@@ -471,7 +533,12 @@ impl Solver for QuickSolver<'_> {
             }
             columns.push((*e, col, d));
         }
-        let amps = c.branches.iter().zip(&f.ys).map(|(b, y)| y * (volts[b.a] - volts[b.b])).collect();
+        let amps = c
+            .branches
+            .iter()
+            .zip(&f.ys)
+            .map(|(b, y)| y * (volts[b.a] - volts[b.b]))
+            .collect();
         Phasors { volts, amps }
     }
 
@@ -480,7 +547,8 @@ impl Solver for QuickSolver<'_> {
         let (&a0, &b0) = (a.first()?, b.first()?);
         // Nodes joined within a group: short them one by one with columns (an ideal short is y → ∞).
         let mut columns: Vec<(usize, usize, Vec<Complex64>, Complex64)> = Vec::new();
-        let reduce = |col: &mut Vec<Complex64>, columns: &[(usize, usize, Vec<Complex64>, Complex64)]| {
+        let reduce = |col: &mut Vec<Complex64>,
+                      columns: &[(usize, usize, Vec<Complex64>, Complex64)]| {
             for (pa, pb, pc, z) in columns {
                 let k = (col[*pa] - col[*pb]) / z;
                 for (x, y) in col.iter_mut().zip(pc) {
@@ -521,6 +589,7 @@ impl QuickSolver<'_> {
                 merged.join(pair[0], pair[1]);
             }
         }
-        a.iter().any(|&x| b.iter().any(|&y| merged.find(x) == merged.find(y)))
+        a.iter()
+            .any(|&x| b.iter().any(|&y| merged.find(x) == merged.find(y)))
     }
 }

@@ -33,7 +33,11 @@ pub enum Unnamed {
     Off,
 }
 
-fn unknown<'a>(what: &'static str, name: &str, names: impl Iterator<Item = &'a String>) -> NetworkError {
+fn unknown<'a>(
+    what: &'static str,
+    name: &str,
+    names: impl Iterator<Item = &'a String>,
+) -> NetworkError {
     NetworkError::UnknownPlace {
         what,
         name: name.to_owned(),
@@ -44,13 +48,19 @@ fn unknown<'a>(what: &'static str, name: &str, names: impl Iterator<Item = &'a S
 impl Circuit {
     /// A device's index.
     pub fn device(&self, id: &str) -> Result<usize, NetworkError> {
-        self.device_ids.get(id).copied().ok_or_else(|| unknown("device", id, self.device_ids.keys()))
+        self.device_ids
+            .get(id)
+            .copied()
+            .ok_or_else(|| unknown("device", id, self.device_ids.keys()))
     }
 
     /// A terminal's node.
     pub fn terminal(&self, name: &str) -> Result<usize, NetworkError> {
         self.node(name).ok_or_else(|| {
-            let shown = self.terminals.keys().filter(|t| !t.starts_with("network.") && !t.starts_with("street."));
+            let shown = self
+                .terminals
+                .keys()
+                .filter(|t| !t.starts_with("network.") && !t.starts_with("street."));
             unknown("terminal", name, shown)
         })
     }
@@ -79,15 +89,23 @@ impl Circuit {
         for id in &setup.closed {
             let device = self.device(id)?;
             if sw.device_open[device] {
-                return Err(NetworkError::Bad(format!("{id} cannot be open and closed at once")));
+                return Err(NetworkError::Bad(format!(
+                    "{id} cannot be open and closed at once"
+                )));
             }
         }
         for id in &setup.lift {
-            let end = self.end_ids.get(id).ok_or_else(|| unknown("conductor end", id, self.end_ids.keys()))?;
+            let end = self
+                .end_ids
+                .get(id)
+                .ok_or_else(|| unknown("conductor end", id, self.end_ids.keys()))?;
             sw.end_lifted[*end] = true;
         }
         let item = |id: &String| {
-            self.item_ids.get(id).copied().ok_or_else(|| unknown("equipment", id, self.item_ids.keys()))
+            self.item_ids
+                .get(id)
+                .copied()
+                .ok_or_else(|| unknown("equipment", id, self.item_ids.keys()))
         };
         match &setup.unplug {
             UnplugSet::All(_) => {
@@ -119,14 +137,22 @@ impl Circuit {
                 .get(&load.at)
                 .ok_or_else(|| unknown("board or point", &load.at, self.load_branches.keys()))?;
             if !load.watts.is_finite() || load.watts < 0.0 {
-                return Err(NetworkError::Bad(format!("a load of {} W at {}: give watts above zero", load.watts, load.at)));
+                return Err(NetworkError::Bad(format!(
+                    "a load of {} W at {}: give watts above zero",
+                    load.watts, load.at
+                )));
             }
             sw.loads.push((*branch, load.watts));
         }
         for (id, mode) in &setup.sources {
-            let i = self.source_ids.get(id).ok_or_else(|| unknown("source", id, self.source_ids.keys()))?;
+            let i = self
+                .source_ids
+                .get(id)
+                .ok_or_else(|| unknown("source", id, self.source_ids.keys()))?;
             if *mode == SourceMode::Backup && !self.source_backup[*i] {
-                return Err(NetworkError::Bad(format!("{id} cannot feed the site alone: its `backup` is false")));
+                return Err(NetworkError::Bad(format!(
+                    "{id} cannot feed the site alone: its `backup` is false"
+                )));
             }
             sw.sources[*i] = *mode;
         }

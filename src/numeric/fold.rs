@@ -59,7 +59,10 @@ impl Scalar for Complex64 {
         let scale = other.re.abs().max(other.im.abs());
         let (re, im) = (other.re / scale, other.im / scale);
         let d = (re * re + im * im) * scale;
-        Self::new((self.re * re + self.im * im) / d, (self.im * re - self.re * im) / d)
+        Self::new(
+            (self.re * re + self.im * im) / d,
+            (self.im * re - self.re * im) / d,
+        )
     }
     fn is_zero(&self) -> bool {
         self.re == 0.0 && self.im == 0.0
@@ -112,8 +115,10 @@ impl Pattern {
             near[b].push((a as u32, slot));
             slot
         };
-        let edge_slot =
-            edges.iter().map(|&(a, b)| (a != b).then(|| link(&mut near, &mut slots, a, b))).collect();
+        let edge_slot = edges
+            .iter()
+            .map(|&(a, b)| (a != b).then(|| link(&mut near, &mut slots, a, b)))
+            .collect();
         let mut gone = vec![false; nodes];
         let mut stays = vec![false; nodes];
         for &k in kept {
@@ -165,7 +170,12 @@ impl Pattern {
                     low = low.min(degree);
                 }
             }
-            steps.push(Step { node: node as u32, first, degree: star.len() as u32, fill });
+            steps.push(Step {
+                node: node as u32,
+                first,
+                degree: star.len() as u32,
+                fill,
+            });
             neighbours.extend(star);
         }
         let mut kept_pairs = Vec::new();
@@ -176,7 +186,15 @@ impl Pattern {
                 }
             }
         }
-        Self { steps, neighbours, fills, edge_slot, slots: slots as usize, nodes, kept_pairs }
+        Self {
+            steps,
+            neighbours,
+            fills,
+            edge_slot,
+            slots: slots as usize,
+            nodes,
+            kept_pairs,
+        }
     }
 
     /// Number of nodes.
@@ -376,7 +394,10 @@ mod tests {
         pattern.push(&folded, &mut j);
         let mut v = vec![0.0; 3];
         pattern.pull(&folded, Some(&j), &mut v);
-        assert!((v[1] - 2.0).abs() < 1e-15 && (v[2] - 1.0).abs() < 1e-15, "{v:?}");
+        assert!(
+            (v[1] - 2.0).abs() < 1e-15 && (v[2] - 1.0).abs() < 1e-15,
+            "{v:?}"
+        );
     }
 
     #[test]

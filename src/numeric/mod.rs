@@ -1,7 +1,7 @@
 //! How to compute with numbers: elimination, distributions, random streams, with the same bits everywhere.
 
-pub mod fold;
 pub mod dist;
+pub mod fold;
 mod normal;
 pub mod quadrature;
 pub mod rng;

@@ -105,7 +105,7 @@ const fn bounds(what: &'static str, unit: &'static str, least: f64, most: f64) -
 }
 
 /// Cable and conductor lengths.
-pub const METRES: Bounds = bounds("a length", "m", 0.01, 10_000.0);
+pub const METRES: Bounds = bounds("a length", "m", 1e-6, 10_000.0);
 /// Conductor sections.
 pub const MM2: Bounds = bounds("a conductor's section", "mm²", 0.2, 2_000.0);
 /// Device ratings.
