@@ -42,3 +42,10 @@ pub struct Check {
     /// Place where the person stands, for walking.
     pub place: String,
 }
+
+impl Check {
+    /// Its key: test and place, unique together.
+    pub fn key(&self) -> (&str, &str) {
+        (&self.test, &self.at)
+    }
+}

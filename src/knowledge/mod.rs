@@ -8,6 +8,7 @@ pub mod procedure;
 pub mod records;
 mod source;
 pub mod words;
+pub mod template;
 
 pub use issue::{Issue, KnowledgeError};
 pub use library::Knowledge;
@@ -15,3 +16,4 @@ pub use procedure::{
     AllWord, Hookup, Load, Meter, MeterWord, Provoke, Setup, SourceMode, UnplugSet,
 };
 pub use records::*;
+pub use template::{Unfilled, fill};

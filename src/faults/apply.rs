@@ -1,0 +1,104 @@
+//! Faults as edits of the circuit: templates filled, values set, contradictions refused.
+
+use std::collections::BTreeMap;
+
+use super::error::FaultError;
+use super::fault::Fault;
+use super::build::{Claim, build, claims, contradict};
+use super::valid::checked;
+use crate::knowledge::{FaultKind, Knowledge, Manner, Prior};
+use crate::network::Edit;
+use crate::site::Site;
+
+/// The edits that a list of faults makes on a site.
+///
+/// # Errors
+/// An unknown kind or place, a missing or needless `to`, `conductor`, `value` or `position`, two
+/// faults that contradict each other, a kind that does not change the circuit: see [`FaultError`].
+pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec<Edit>, FaultError> {
+    let mut out = Vec::new();
+    let mut claimed: BTreeMap<String, (usize, Claim)> = BTreeMap::new();
+    for (index, fault) in faults.iter().enumerate() {
+        let kind = kind_of(knowledge, &fault.kind)?;
+        let (place, to) = checked(kind, site, fault)?;
+        if kind.edits.is_empty() {
+            return Err(FaultError::NotPredictable { kind: kind.kind.clone() });
+        }
+        let conflict = |other: usize, branch: &str| FaultError::Conflict {
+            first: said(&faults[other]),
+            second: said(fault),
+            branch: branch.to_owned(),
+        };
+        if let Some(other) = faults[..index].iter().position(|f| same_thing(f, fault)) {
+            return Err(conflict(other, &fault.at));
+        }
+        for edit in build(kind, site, fault, &place, to.as_ref())? {
+            for (branch, claim) in claims(&edit) {
+                match claimed.get(&branch) {
+                    Some(&(other, held)) if other != index && contradict(held, claim) => {
+                        return Err(conflict(other, &branch));
+                    }
+                    Some(_) => {}
+                    None => {
+                        claimed.insert(branch, (index, claim));
+                    }
+                }
+            }
+            out.push(edit);
+        }
+    }
+    Ok(out)
+}
+
+/// The row of a kind.
+///
+/// # Errors
+/// [`FaultError::UnknownKind`] with the nearest kinds.
+pub fn kind_of<'a>(knowledge: &'a Knowledge, word: &str) -> Result<&'a FaultKind, FaultError> {
+    knowledge.faults.iter().find(|k| k.kind == word).ok_or_else(|| FaultError::UnknownKind {
+        kind: word.to_owned(),
+        near: near(word, knowledge.faults.iter().map(|k| k.kind.as_str())),
+    })
+}
+
+/// The distribution of a kind's value, if it has one.
+pub fn value_prior(kind: &FaultKind) -> Option<&Prior> {
+    kind.value.as_ref().map(|value| &value.prior)
+}
+
+/// How a kind comes and goes; `None`: steady.
+pub fn manner(kind: &FaultKind) -> Option<&Manner> {
+    kind.manner.as_ref()
+}
+
+/// The value a fault has where it is not told: the median of its kind's prior, as clipped.
+pub fn median(prior: &Prior) -> f64 {
+    let clip = |x: f64, low: Option<f64>, high: Option<f64>| {
+        x.max(low.unwrap_or(f64::NEG_INFINITY)).min(high.unwrap_or(f64::INFINITY))
+    };
+    match *prior {
+        Prior::Fixed { value } => value,
+        Prior::Normal { mean, low, high, .. } => clip(mean, low, high),
+        Prior::Lognormal { median, low, high, .. } => clip(median, low, high),
+        Prior::Uniform { low, high } => 0.5 * (low + high),
+        Prior::Switch { p } => f64::from(u8::from(p >= 0.5)),
+    }
+}
+
+/// A fault as `kind@at`.
+fn said(fault: &Fault) -> String {
+    format!("`{}` at `{}`", fault.kind, fault.at)
+}
+
+/// The same kind at the same place twice, in the same conductor and to the same other place.
+fn same_thing(a: &Fault, b: &Fault) -> bool {
+    a.kind == b.kind && a.at == b.at && a.conductor == b.conductor && a.to == b.to
+}
+
+/// Up to three valid words nearest to a wrong one.
+pub(crate) fn near<'a>(word: &str, valid: impl Iterator<Item = &'a str>) -> Vec<String> {
+    let mut scored: Vec<(usize, &str)> = valid.map(|v| (strsim::damerau_levenshtein(word, v), v)).collect();
+    scored.sort_unstable();
+    scored.dedup();
+    scored.into_iter().filter(|(d, v)| *d <= 2 + v.len() / 3).take(3).map(|(_, v)| v.to_owned()).collect()
+}
