@@ -82,6 +82,7 @@ pub fn median(prior: &Prior) -> f64 {
         Prior::Lognormal { median, low, high, .. } => clip(median, low, high),
         Prior::Uniform { low, high } => 0.5 * (low + high),
         Prior::Switch { p } => f64::from(u8::from(p >= 0.5)),
+        Prior::Either { p, ref lower, ref upper } => median(if p > 0.5 { lower } else { upper }),
     }
 }
 

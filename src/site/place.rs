@@ -113,8 +113,8 @@ impl Place {
     pub fn board(&self, site: &Site) -> usize {
         match self.spot {
             Spot::Board(b) | Spot::Circuit(b, _) | Spot::Rcd(b, _) | Spot::Electrode(b) => b,
-            Spot::Source(s) if self.point(site).is_none() => match site.sources.get(s).map(|s| s.at) {
-                Some(SourcePlace::Board(b)) => b,
+            Spot::Source(s) if self.point(site).is_none() => match site.sources.get(s).map(|s| &s.at) {
+                Some(SourcePlace::Board(b)) => *b,
                 _ => site.main_board,
             },
             _ => self.point(site).map_or(site.main_board, |p| p.board),
