@@ -7,6 +7,7 @@ mod error;
 pub mod event;
 pub mod log;
 pub mod nearest;
+pub mod view;
 
 pub use clock::Clock;
 pub use error::{ErrorCode, SessionError};
