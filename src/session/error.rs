@@ -89,6 +89,11 @@ impl ErrorCode {
         Self::Internal,
     ];
 
+    /// The code of a word of the contract; [`Self::Internal`] for any other.
+    pub fn of(word: &str) -> Self {
+        Self::ALL.into_iter().find(|code| code.as_str() == word).unwrap_or(Self::Internal)
+    }
+
     /// The word of the contract.
     pub fn as_str(self) -> &'static str {
         match self {
@@ -160,9 +165,9 @@ impl SessionError {
         given: &str,
         valid: impl IntoIterator<Item = &'a str>,
     ) -> Self {
-        let nearest = super::nearest::nearest(given, valid);
+        let nearest = crate::quantity::nearest(given, valid, 3);
         let hint = match nearest.as_slice() {
-            [] => "there is none here".to_owned(),
+            [] => "see `vocabulary` and `tests` for what there is".to_owned(),
             [one] => format!("the nearest is `{one}`"),
             more => format!("the nearest are `{}`", more.join("`, `")),
         };

@@ -6,7 +6,6 @@ pub mod command;
 mod error;
 pub mod event;
 pub mod log;
-pub mod nearest;
 pub mod view;
 
 pub use clock::Clock;

@@ -3,8 +3,8 @@
 use serde::de::DeserializeOwned;
 use serde_json::{Map, Value};
 
+use crate::quantity::nearest;
 use crate::session::command as c;
-use crate::session::nearest::nearest;
 use crate::session::{ErrorCode, SessionError};
 
 /// A request of contract §6.
@@ -171,52 +171,42 @@ fn typed<T: DeserializeOwned>(op: &str, keys: Map<String, Value>) -> Result<T, S
 /// behind it; the tests below hold them to that.
 fn explain(op: &str, path: &str, message: &str) -> SessionError {
     let mut quoted = message.split('`').skip(1).step_by(2);
+    let given = quoted.next().unwrap_or_default();
+    let valid: Vec<&str> = quoted.collect();
+    let near = nearest(given, &valid, 1);
+    let cure = |what: &str| match near.first() {
+        Some(word) => format!("the nearest valid {what} is `{word}`"),
+        None => format!("valid here: {}", valid.join(", ")),
+    };
     let at = if path == "." {
         op.to_owned()
     } else {
         format!("{op}: {path}")
     };
     if message.starts_with("unknown field") {
-        let key = quoted.next().unwrap_or_default();
-        let near = nearest(key, quoted);
-        let hint = near.first().map_or("it takes no keys".to_owned(), |k| {
-            format!("the nearest valid key is `{k}`")
-        });
         // Some serde paths end in the key itself, others in the object that holds it.
         let full = match path {
-            "." => key.to_owned(),
-            _ if path == key || path.ends_with(&format!(".{key}")) => path.to_owned(),
-            _ => format!("{path}.{key}"),
+            "." => given.to_owned(),
+            _ if path == given || path.ends_with(&format!(".{given}")) => path.to_owned(),
+            _ => format!("{path}.{given}"),
         };
-        return SessionError::new(
-            ErrorCode::UnknownKey,
-            format!("`{op}` has no key `{full}`"),
-            hint,
-        )
-        .with("key", key)
-        .with("path", full)
-        .with("nearest", near);
+        let text = format!("`{op}` has no key `{full}`");
+        return SessionError::new(ErrorCode::UnknownKey, text, cure("key"))
+            .with("key", given)
+            .with("path", full)
+            .with("nearest", near);
     }
     if message.starts_with("unknown variant") {
-        let word = quoted.next().unwrap_or_default();
-        let near = nearest(word, quoted);
-        let hint = near.first().map_or(String::new(), |k| {
-            format!("the nearest valid word is `{k}`")
-        });
-        return SessionError::new(
-            ErrorCode::UnknownWord,
-            format!("{at}: there is no word `{word}` here"),
-            hint,
-        )
-        .with("path", path)
-        .with("nearest", near);
+        let text = format!("{at}: there is no word `{given}` here");
+        return SessionError::new(ErrorCode::UnknownWord, text, cure("word"))
+            .with("path", path)
+            .with("nearest", near);
     }
     if message.starts_with("missing field") {
-        let key = quoted.next().unwrap_or_default();
         let full = if path == "." {
-            key.to_owned()
+            given.to_owned()
         } else {
-            format!("{path}.{key}")
+            format!("{path}.{given}")
         };
         return SessionError::new(
             ErrorCode::BadRequest,
