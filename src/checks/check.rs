@@ -39,6 +39,8 @@ pub struct Check {
     pub limits: Vec<String>,
     /// Never advised.
     pub recheck_only: bool,
+    /// A stage of the procedure that proves the supply neutral: its own `needs` stand in place of that proof.
+    pub staged: bool,
     /// Place where the person stands, for walking.
     pub place: String,
 }

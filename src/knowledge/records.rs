@@ -697,6 +697,20 @@ pub struct SafetyRow {
     pub supply_proof: String,
     /// Probability below which a hypothesis is not credible for a hazard.
     pub credible: f64,
+    /// The proof that a test between line and PE at `{at}` needs.
+    #[serde(default = "default_earth_proof")]
+    pub earth_proof: String,
+    /// Volts from earth bar to soil above which main earth and link stay where they are.
+    #[serde(default = "default_earth_lift_volts")]
+    pub earth_lift_volts: f64,
+}
+
+fn default_earth_proof() -> String {
+    "earth continuity {at}".to_owned()
+}
+
+fn default_earth_lift_volts() -> f64 {
+    2.0
 }
 
 /// Expected shares of what is not a fault kind, in the units of `presence`.

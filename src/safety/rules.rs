@@ -1,0 +1,358 @@
+//! What is refused whatever it might tell, and what must be proved first (trade.md D.3, D.4).
+
+use super::Ground;
+use super::hold::{is_dead_everywhere, isolates, isolation};
+use super::places::{
+    board_of_end, conductor_of, is_line, is_off, mains_of, place_of, place_of_end, source_is_off, terminals_of,
+};
+use super::state::{State, is_stake_check};
+use super::words::{list, words};
+use crate::checks::Check;
+use crate::knowledge::{Hookup, Meter, Provoke, Setup, SourceMode, UnplugSet, procedure::MeterWord};
+use crate::site::System;
+
+/// Why a check may not be made, and what may be done instead.
+#[derive(Clone, Debug, PartialEq, Eq, serde::Serialize)]
+pub struct Refusal {
+    /// The reason.
+    pub reason: String,
+    /// The safer way, where there is one.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub safer: Option<String>,
+}
+
+impl Refusal {
+    pub(super) fn new(reason: impl Into<String>, safer: impl Into<String>) -> Self {
+        Self { reason: reason.into(), safer: Some(safer.into()) }
+    }
+
+    pub(super) fn plain(reason: impl Into<String>) -> Self {
+        Self { reason: reason.into(), safer: None }
+    }
+}
+
+/// A loop tester's current where the hookup names none, A (contract §3).
+const LOOP_AMPS: f64 = 10.0;
+
+/// A voltmeter of fewer ohms loads what it measures (contract §3: low-z is 3 kΩ).
+const HIGH_OHMS: f64 = 1e5;
+
+/// The first rule that forbids the check in the present state.
+pub(super) fn refusal(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal> {
+    fuse(ground, check)
+        .or_else(|| standing(ground, state, check))
+        .or_else(|| lifts(ground, check))
+        .or_else(|| dead_quantity(ground, check))
+        .or_else(|| sources(ground, check))
+        .or_else(|| wetting(ground, check))
+        .or_else(|| unprovable(ground, state, check))
+}
+
+fn fuse(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
+    let opens = check.setup.open.iter().any(|device| device == "service.fuse");
+    (opens && !ground.site.may_isolate_supply).then(|| {
+        Refusal::new(
+            "the service fuse is not this person's to open",
+            "have the network operator make the service dead",
+        )
+    })
+}
+
+/// A tingle, a shock, flaring lamps: metal is live until a stake says otherwise.
+fn standing(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal> {
+    let upstream = check.setup.open.iter().any(|device| device == "service.fuse");
+    let looks = matches!(check.hookup, Hookup::Seen { .. }) && check.setup == Setup::default();
+    if is_stake_check(ground.site, check) || upstream || looks {
+        return None;
+    }
+    let earth = words(ground.site).earth;
+    match state.stake() {
+        None if state.is_standing() => Some(Refusal::new(
+            format!("every metal part counts as live until the {earth} bar has been read against a stake"),
+            format!("first volts from {earth} bar to a stake in open ground, 10 m clear; nobody in reach of metal"),
+        )),
+        Some(stake) if stake.volts > ground.numbers.touch_volts => {
+            let mains_off = state.network_attended()
+                && mains_of(ground.site, ground.site.main_board).iter().all(|m| check.setup.open.contains(m));
+            (!mains_off).then(|| {
+                Refusal::new(
+                    format!("{:.0} V from {earth} bar to stake: withdraw; nothing more is tested live here", stake.volts),
+                    "have the network operator make the service dead upstream",
+                )
+            })
+        }
+        Some(stake) if stake.volts > ground.numbers.dead_volts && stirs(ground, check) => Some(Refusal::new(
+            format!(
+                "{:.0} V from {earth} bar to stake: no load, loop, RCD or low-impedance test, and nothing touched",
+                stake.volts
+            ),
+            "high-impedance volts to the stake and a clamp, gloved; then the network operator",
+        )),
+        _ => None,
+    }
+}
+
+/// Whether an energised check draws current or puts a hand on conductors.
+fn stirs(ground: &Ground<'_>, check: &Check) -> bool {
+    let draws = match &check.hookup {
+        Hookup::Volts { meter, .. } => low_impedance(meter),
+        Hookup::Loop { .. } | Hookup::TripTime { .. } | Hookup::Ramp { .. } | Hookup::Lamp { .. } => true,
+        Hookup::Holds { .. } => true,
+        Hookup::Amps { .. } | Hookup::Insulation { .. } | Hookup::Continuity { .. } | Hookup::Seen { .. } => false,
+    };
+    let lifts = !check.setup.lift.is_empty();
+    check.energised && (draws || lifts || added_watts(ground, &check.setup) > 0.0 || check.setup.provoke.is_some())
+}
+
+fn low_impedance(meter: &Option<Meter>) -> bool {
+    match meter {
+        Some(Meter::Named(MeterWord::LowZ)) => true,
+        Some(Meter::Ohms(ohms)) => *ohms < HIGH_OHMS,
+        Some(Meter::Named(MeterWord::HighZ)) | None => false,
+    }
+}
+
+/// Watts that a setup adds: its loads, and the equipment that it switches on (unknown watts count as infinite).
+pub(super) fn added_watts(ground: &Ground<'_>, setup: &Setup) -> f64 {
+    let loads: f64 = setup.load.iter().map(|l| l.watts.abs()).sum();
+    let of = |id: &String| {
+        let site = ground.site;
+        site.equipment_index(id).and_then(|e| site.equipment.get(e)).and_then(|e| e.watts).unwrap_or(f64::INFINITY)
+    };
+    loads + setup.on.iter().map(of).sum::<f64>()
+}
+
+/// Main earth, link and bond stay where they are while any supply is on; a neutral never leaves before its lines.
+fn lifts(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
+    check.setup.lift.iter().find_map(|end| lift(ground, check, end))
+}
+
+fn lift(ground: &Ground<'_>, check: &Check, end: &str) -> Option<Refusal> {
+    let site = ground.site;
+    let setup = &check.setup;
+    let board = board_of_end(site, end)?;
+    let home = site.boards.get(board)?;
+    let off = is_off(site, &home.id, setup);
+    let mains = list(&mains_of(site, board));
+    let feeding = (0..site.sources.len()).find(|s| !source_is_off(site, *s, setup) && !check_isolates_source(ground, check));
+    if end.ends_with(".main-earth") || end.ends_with(".link") || end.ends_with(".bond") {
+        if !off {
+            return Some(Refusal::new(
+                format!("{end} may be the only neutral left: it is not parted while any supply is on"),
+                format!("open and lock {mains} (every tariff and source) and prove dead first, or clamp instead of lifting"),
+            ));
+        }
+        if let Some(source) = feeding.and_then(|s| site.sources.get(s)) {
+            return Some(Refusal::new(
+                format!("{end} is not parted while {} can feed", source.id),
+                format!("switch {} off and lock it", source.id),
+            ));
+        }
+        return None;
+    }
+    if end.ends_with(".main-neutral") {
+        let all_open = mains_of(site, board).iter().all(|m| setup.open.contains(m));
+        let dead = setup.open.iter().any(|device| device == "service.fuse");
+        return (!(all_open && dead)).then(|| {
+            Refusal::new(
+                "the incoming neutral is parted only with every main switch open and the supply proved dead",
+                "open every main switch and the service fuse, prove dead at the service, then lift it",
+            )
+        });
+    }
+    if end.contains(".N@") || end.contains(".PE@") {
+        let place = place_of_end(site, end);
+        let head = end.split('.').next().unwrap_or(end);
+        let lines_lifted = setup.lift.iter().any(|e| e.starts_with(&format!("{head}.L")) && e.ends_with("@board"));
+        if !is_off(site, &place, setup) && !lines_lifted {
+            let line = words(site).line;
+            return Some(Refusal::new(
+                format!("{end} is not parted while its {line}s are closed: what is left behind it rises to full volts"),
+                format!("{line}s off first ({head}.breaker, better {mains}), prove dead, then lift, then prove again"),
+            ));
+        }
+    }
+    None
+}
+
+/// Dead tests take their sources off by the isolating hold point.
+fn check_isolates_source(ground: &Ground<'_>, check: &Check) -> bool {
+    ground.site.sources.iter().all(|s| !s.backup && !check.setup.sources.contains_key(&s.id)) && isolates(check)
+}
+
+/// Insulation and continuity are for dead conductors, and insulation between line and neutral for bare ones.
+fn dead_quantity(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
+    let dead_only = matches!(check.hookup, Hookup::Insulation { .. } | Hookup::Continuity { .. });
+    if !dead_only {
+        return None;
+    }
+    let live_word = |t: &String| is_line(t) || conductor_of(t) == "N";
+    if check.energised
+        || (terminals_of(ground.site, &check.hookup).iter().any(live_word) && !is_dead_everywhere(ground, check))
+    {
+        return Some(Refusal::new(
+            "this is a test for dead conductors, and the supply is on there",
+            "open and lock what feeds it and prove dead first",
+        ));
+    }
+    let Hookup::Insulation { between: [a, b], .. } = &check.hookup else { return None };
+    let parts = |one: &[String], other: &[String]| {
+        one.iter().any(|t| is_line(t)) && other.iter().any(|t| conductor_of(t) == "N") && !other.iter().any(|t| is_line(t))
+    };
+    let across = (parts(a, b) && !a.iter().any(|t| conductor_of(t) == "N"))
+        || (parts(b, a) && !b.iter().any(|t| conductor_of(t) == "N"));
+    let connected = across.then(|| equipment_left(ground, check)).flatten()?;
+    let (line, _) = words(ground.site).letters;
+    Some(Refusal::new(
+        format!("insulation {line}–N with {connected} connected destroys it or reads it"),
+        format!("join {line} and N and test both to earth, or unplug everything on the circuit first"),
+    ))
+}
+
+/// Equipment that the setup leaves on a circuit under test.
+fn equipment_left(ground: &Ground<'_>, check: &Check) -> Option<String> {
+    let site = ground.site;
+    let circuits: Vec<(usize, usize)> = terminals_of(site, &check.hookup)
+        .iter()
+        .filter_map(|t| {
+            let head = place_of(t).split('.').next()?.to_owned();
+            site.circuit_index(&head)
+        })
+        .collect();
+    site.equipment
+        .iter()
+        .filter(|e| circuits.is_empty() || circuits.contains(&(e.at.board, e.at.circuit)))
+        .find(|e| {
+            let unplugged = e.plug
+                && match &check.setup.unplug {
+                    UnplugSet::All(_) => true,
+                    UnplugSet::These(items) => items.contains(&e.id),
+                };
+            !unplugged && !(check.setup.off.contains(&e.id) && !e.plug)
+        })
+        .map(|e| e.name.clone())
+}
+
+/// What can backfeed is off before anything is called dead.
+fn sources(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
+    if check.energised || !isolates(check) {
+        return None;
+    }
+    ground.site.sources.iter().enumerate().find_map(|(index, source)| {
+        let named_on = check.setup.sources.get(&source.id).is_some_and(|mode| *mode != SourceMode::Off);
+        let stays = named_on || (source.backup && !source_is_off(ground.site, index, &check.setup));
+        stays.then(|| {
+            Refusal::new(
+                format!("{} can feed what this test calls dead", source.id),
+                format!("switch {} off on both sides, lock it, and prove dead", source.id),
+            )
+        })
+    })
+}
+
+/// Water on live parts only behind an RCD.
+fn wetting(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
+    if check.setup.provoke != Some(Provoke::Wet) || !check.energised {
+        return None;
+    }
+    let site = ground.site;
+    let bare = terminals_of(site, &check.hookup)
+        .iter()
+        .filter_map(|t| place_of(t).split('.').next().and_then(|head| site.circuit_index(head)))
+        .filter_map(|(board, circuit)| site.boards.get(board).and_then(|b| b.circuits.get(circuit)))
+        .any(|circuit| circuit.rcd.is_none());
+    bare.then(|| Refusal::new("water on a live circuit without an RCD", "wet it with the circuit dead, and test its insulation"))
+}
+
+/// A proof that nothing at hand can give.
+fn unprovable(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal> {
+    proofs_needed(ground, check).into_iter().find_map(|proof| {
+        let open = !state.has(&proof) && check_that_proves(ground, check, &proof).is_none();
+        open.then(|| Refusal::plain(format!("it needs this proved first: {proof}; and no test at hand proves it")))
+    })
+}
+
+/// The proofs that must stand before a check: its own, and those that its load, its loop current, its
+/// path through the protective conductor, or its lifting ask for.
+pub(super) fn proofs_needed(ground: &Ground<'_>, check: &Check) -> Vec<String> {
+    let mut needed = check.needs.clone();
+    let mut add = |proof: String| {
+        if !needed.contains(&proof) {
+            needed.push(proof);
+        }
+    };
+    let numbers = ground.numbers;
+    let linked = ground.site.supply.system == System::TnCS;
+    let loop_amps = match &check.hookup {
+        Hookup::Loop { amps, .. } => amps.unwrap_or(LOOP_AMPS),
+        _ => 0.0,
+    };
+    let gives_it = check.proves.iter().any(|p| p.what == numbers.supply_proof);
+    let loads = check.energised && added_watts(ground, &check.setup) > numbers.free_watts;
+    let supply = linked && !check.staged && !gives_it;
+    if supply && (loads || loop_amps > numbers.free_loop_amps) {
+        add(numbers.supply_proof.clone());
+    }
+    if let Some(place) = earth_path(check) {
+        let at_point = ground.site.point_ref(&place).is_some();
+        if at_point {
+            add(numbers.earth_proof.replace("{at}", &place));
+        } else if supply {
+            add(numbers.supply_proof.clone());
+        }
+    }
+    for end in check.setup.lift.iter().filter(|end| end.ends_with(".main-earth")) {
+        if quiet_check(ground, check, end).is_some() {
+            add(quiet_proof(end, &isolation(ground, check).open));
+        }
+    }
+    needed
+}
+
+/// The place whose protective conductor carries the test's current, if the test drives one through it.
+fn earth_path(check: &Check) -> Option<String> {
+    let through = |between: &[String; 2]| {
+        let line = between.iter().find(|t| is_line(t))?;
+        let earth = between.iter().find(|t| matches!(conductor_of(t), "PE" | "frame" | "pipe"))?;
+        Some(place_of(if conductor_of(earth) == "PE" { earth } else { line }).to_owned())
+    };
+    match &check.hookup {
+        Hookup::Loop { between, .. } => through(between),
+        Hookup::Volts { between, meter } if low_impedance(meter) => through(between),
+        Hookup::TripTime { rcd, at, .. } | Hookup::Ramp { rcd, at } => Some(at.clone().unwrap_or_else(|| rcd.clone())),
+        _ => None,
+    }
+}
+
+/// The proof that a conductor to be lifted carries next to nothing once this is open.
+pub(super) fn quiet_proof(end: &str, open: &[String]) -> String {
+    let mut open = open.to_vec();
+    open.sort();
+    open.dedup();
+    format!("no current in {end} with {} open", open.join("+"))
+}
+
+/// The check whose clamp gives the quiet proof of an end in the state in which it is lifted.
+pub(super) fn quiet_check<'a>(ground: &Ground<'a>, check: &Check, end: &str) -> Option<&'a Check> {
+    let wanted = quiet_proof(end, &isolation(ground, check).open);
+    ground.catalogue.iter().find(|c| proves_quiet(c).is_some_and(|proof| proof == wanted))
+}
+
+/// The quiet proof that a clamp reading round one liftable end may give.
+pub(super) fn proves_quiet(check: &Check) -> Option<String> {
+    let Hookup::Amps { around } = &check.hookup else { return None };
+    match around.as_slice() {
+        [end] if check.setup.lift.is_empty() && check.setup.load.is_empty() => Some(quiet_proof(end, &check.setup.open)),
+        _ => None,
+    }
+}
+
+/// The cheapest check at hand whose reading gives a proof, other than the one that needs it.
+pub(super) fn check_that_proves<'a>(ground: &Ground<'a>, check: &Check, proof: &str) -> Option<&'a Check> {
+    ground
+        .catalogue
+        .iter()
+        .filter(|c| (c.test.as_str(), c.at.as_str()) != (check.test.as_str(), check.at.as_str()))
+        .filter(|c| c.proves.iter().any(|p| p.what == proof) || proves_quiet(c).is_some_and(|quiet| quiet == proof))
+        .min_by(|a, b| a.minutes.total_cmp(&b.minutes))
+}

@@ -1,0 +1,470 @@
+//! The state of the installation as the person has made it, folded from events: setup, proofs, points done.
+
+use std::collections::{BTreeMap, BTreeSet};
+
+use super::Ground;
+use super::hold::{HoldPoint, Stage, state_key};
+use super::places::{parts_neutral, place_of_end};
+use super::rules::proves_quiet;
+use crate::checks::Check;
+use crate::knowledge::{Hookup, Proof, Setup, SourceMode};
+use crate::quantity::{ParsedValue, Word};
+use crate::site::Site;
+
+/// A pair of terminals proved dead in the present state.
+#[derive(Clone, Debug, PartialEq, serde::Serialize)]
+pub struct DeadProof {
+    /// First terminal.
+    pub at: String,
+    /// Second terminal.
+    pub against: String,
+    /// What was read, V.
+    pub volts: f64,
+    /// Log entry.
+    pub entry: u64,
+}
+
+/// A reading that a hold point wants, and that is over its limit.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+#[error("{name} reads {volts} V, over {limit} V: not dead; leave it alone, find what feeds it, and prove again")]
+pub struct NotDead {
+    /// Name of the want.
+    pub name: String,
+    /// Its terminals.
+    pub between: [String; 2],
+    /// As read, V.
+    pub volts: f64,
+    /// Its limit, V.
+    pub limit: f64,
+}
+
+/// What changes the state.
+#[derive(Clone, Debug, PartialEq)]
+pub enum StateEvent<'a> {
+    /// The installation is in this setup now.
+    Arranged(&'a Setup),
+    /// A hold point was done, its readings (V, by the want's name) all within their limits.
+    PointDone {
+        /// The point as it was given out.
+        point: &'a HoldPoint,
+        /// Volts by name of the want.
+        volts: &'a BTreeMap<String, f64>,
+        /// Log entry.
+        entry: u64,
+    },
+    /// A hold point cannot be done: its tests stay closed.
+    PointCannot {
+        /// Its id.
+        point: &'a str,
+        /// Why.
+        why: &'a str,
+        /// Log entry.
+        entry: u64,
+    },
+    /// A reading was accepted, taken in the check's setup.
+    Reading {
+        /// The check, its setup the one it was taken in.
+        check: &'a Check,
+        /// What was read.
+        value: &'a ParsedValue,
+        /// Log entry.
+        entry: u64,
+    },
+    /// A device was found open that nobody opened.
+    FoundTripped {
+        /// Device.
+        device: &'a str,
+        /// Log entry.
+        entry: u64,
+    },
+    /// Something was repaired or replaced at these places (or, by the network operator, outside).
+    Repaired {
+        /// Places as contract §5 writes them.
+        places: &'a [String],
+        /// The network operator has attended.
+        by_network: bool,
+    },
+    /// A complaint that makes every metal part live until shown otherwise.
+    Standing,
+    /// The visit goes on after a break: nobody knows what was switched meanwhile.
+    Resumed,
+    /// An entry was taken back.
+    Retracted(u64),
+}
+
+/// A condition shown by a reading.
+#[derive(Clone, Debug, PartialEq)]
+struct Gained {
+    entry: u64,
+    places: Vec<String>,
+}
+
+/// A hold point that was done.
+#[derive(Clone, Debug, PartialEq)]
+struct Done {
+    entry: u64,
+    order: u64,
+    stage: Stage,
+    key: String,
+}
+
+/// Volts from the earth bar to an independent stake, as found.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct StakeVolts {
+    /// Largest reading, V.
+    pub volts: f64,
+    /// Log entry.
+    pub entry: u64,
+}
+
+/// The state of the visit, as far as safety goes.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct State {
+    /// The setup in which the installation is now.
+    setup: Setup,
+    tripped: BTreeMap<String, u64>,
+    dead: Vec<DeadProof>,
+    done: BTreeMap<String, Done>,
+    cannot: BTreeMap<String, (String, u64)>,
+    proofs: BTreeMap<String, Gained>,
+    standing: bool,
+    network_attended: bool,
+    stake: Option<StakeVolts>,
+    bracketed: bool,
+    order: u64,
+}
+
+impl State {
+    /// Everything in service, nothing proved.
+    pub fn new() -> Self {
+        Self::default()
+    }
+
+    /// The setup in which the installation is now.
+    pub fn setup(&self) -> &Setup {
+        &self.setup
+    }
+
+    /// Devices open, those found tripped included.
+    pub fn open(&self) -> Vec<String> {
+        let all: BTreeSet<&String> = self.setup.open.iter().chain(self.tripped.keys()).collect();
+        all.into_iter().cloned().collect()
+    }
+
+    /// Ends lifted.
+    pub fn lifted(&self) -> &[String] {
+        &self.setup.lift
+    }
+
+    /// Devices found tripped and not reset since.
+    pub fn tripped(&self) -> impl Iterator<Item = &String> {
+        self.tripped.keys()
+    }
+
+    /// What is proved dead in the present state.
+    pub fn proved_dead(&self) -> &[DeadProof] {
+        &self.dead
+    }
+
+    /// Conditions proved, with their log entries.
+    pub fn proofs(&self) -> impl Iterator<Item = (&String, u64)> {
+        self.proofs.iter().map(|(what, gained)| (what, gained.entry))
+    }
+
+    /// Whether a condition is proved now.
+    pub fn has(&self, proof: &str) -> bool {
+        self.proofs.contains_key(proof)
+    }
+
+    /// Whether the complaint makes every metal part live until shown otherwise.
+    pub fn is_standing(&self) -> bool {
+        self.standing
+    }
+
+    /// Whether the network operator has attended since the complaint.
+    pub fn network_attended(&self) -> bool {
+        self.network_attended
+    }
+
+    /// The last reading from the earth bar to a stake as found.
+    pub fn stake(&self) -> Option<StakeVolts> {
+        self.stake
+    }
+
+    /// Why a hold point was said to be impossible.
+    pub fn cannot(&self, point: &str) -> Option<&str> {
+        self.cannot.get(point).map(|(why, _)| why.as_str())
+    }
+
+    /// Log entry of a point done, if its state is still the one it was done in.
+    pub fn done(&self, point: &HoldPoint) -> Option<u64> {
+        self.done.get(&point.point).filter(|d| d.key == point.key).map(|d| d.entry)
+    }
+
+    /// Order in which a point was done, later ones higher.
+    pub(super) fn order_of(&self, id: &str, key: &str) -> Option<u64> {
+        self.done.get(id).filter(|d| d.key == key).map(|d| d.order)
+    }
+
+    /// Whether two terminals are proved dead against each other now.
+    pub(super) fn is_dead(&self, between: &[String; 2]) -> bool {
+        self.dead.iter().any(|p| {
+            (p.at == between[0] && p.against == between[1]) || (p.at == between[1] && p.against == between[0])
+        })
+    }
+
+    /// Whether going to a setup closes or lands something, or lets a source feed.
+    pub(super) fn leaves_isolation(&self, to: &Setup) -> bool {
+        gives_back(&self.setup, to)
+    }
+
+    /// Whether the tester was proved again after the last proof of dead.
+    pub(super) fn is_bracketed(&self) -> bool {
+        self.bracketed
+    }
+
+    /// Judges the readings of a point: the first one over its limit, or missing (as infinite volts).
+    ///
+    /// # Errors
+    /// [`NotDead`] names the want, what was read and the limit.
+    pub fn judge(point: &HoldPoint, volts: &BTreeMap<String, f64>) -> Result<(), NotDead> {
+        for want in &point.wants {
+            let read = volts.get(&want.name).copied().unwrap_or(f64::INFINITY);
+            // Written so that a NaN fails too.
+            if !(read.abs() <= want.limit_volts) {
+                return Err(NotDead {
+                    name: want.name.clone(),
+                    between: want.between.clone(),
+                    volts: read,
+                    limit: want.limit_volts,
+                });
+            }
+        }
+        Ok(())
+    }
+
+    /// Folds one event in.
+    pub fn apply(&mut self, ground: &Ground<'_>, event: &StateEvent<'_>) {
+        let site = ground.site;
+        self.order += 1;
+        match event {
+            StateEvent::Arranged(setup) => self.arrange(site, setup),
+            StateEvent::PointDone { point, volts, entry } => self.point_done(site, point, volts, *entry),
+            StateEvent::PointCannot { point, why, entry } => {
+                self.done.remove(*point);
+                self.cannot.insert((*point).to_owned(), ((*why).to_owned(), *entry));
+            }
+            StateEvent::Reading { check, value, entry } => self.reading(ground, check, value, *entry),
+            StateEvent::FoundTripped { device, entry } => {
+                self.tripped.insert((*device).to_owned(), *entry);
+            }
+            StateEvent::Repaired { places, by_network } => self.repaired(site, places, *by_network),
+            StateEvent::Standing => self.standing = true,
+            StateEvent::Resumed => self.resumed(),
+            StateEvent::Retracted(entry) => self.retracted(*entry),
+        }
+    }
+
+    fn arrange(&mut self, site: &Site, to: &Setup) {
+        if gives_back(&self.setup, to) {
+            self.dead.clear();
+            self.done.retain(|_, d| d.stage.outlives_state());
+            self.proofs.retain(|what, _| !what.starts_with("no current in "));
+        } else if to.lift.iter().any(|end| parts_neutral(end) && !self.setup.lift.contains(end)) {
+            self.dead.clear();
+            self.done.retain(|_, d| d.stage != Stage::ProveDeadAgain);
+        }
+        if state_key(&self.setup) != state_key(to) {
+            self.done.retain(|_, d| !matches!(d.stage, Stage::Energise | Stage::Restore));
+        }
+        let moved: Vec<String> = self
+            .setup
+            .lift
+            .iter()
+            .filter(|end| !to.lift.contains(end))
+            .chain(to.lift.iter().filter(|end| !self.setup.lift.contains(end)))
+            .map(|end| touched_by(site, end))
+            .collect();
+        if !moved.is_empty() {
+            self.withdraw(site, &moved);
+        }
+        self.tripped.retain(|device, _| !to.closed.contains(device));
+        let mut next = (*to).clone();
+        // What a setup leaves unsaid about a source stays as it is: nobody switched it.
+        for (source, mode) in &self.setup.sources {
+            next.sources.entry(source.clone()).or_insert(*mode);
+        }
+        self.setup = next;
+    }
+
+    fn point_done(&mut self, site: &Site, point: &HoldPoint, volts: &BTreeMap<String, f64>, entry: u64) {
+        if point.stage.moves() {
+            self.arrange(site, &point.setup);
+        }
+        for want in &point.wants {
+            let [at, against] = want.between.clone();
+            let read = volts.get(&want.name).copied().unwrap_or(f64::INFINITY);
+            self.dead.retain(|p| (&p.at, &p.against) != (&at, &against));
+            self.dead.push(DeadProof { at, against, volts: read, entry });
+            self.bracketed = false;
+        }
+        if matches!(point.stage, Stage::TesterAfter | Stage::TesterAfterAgain) {
+            self.bracketed = true;
+        }
+        self.cannot.remove(&point.point);
+        let done = Done { entry, order: self.order, stage: point.stage, key: point.key.clone() };
+        self.done.insert(point.point.clone(), done);
+    }
+
+    fn reading(&mut self, ground: &Ground<'_>, check: &Check, value: &ParsedValue, entry: u64) {
+        let site = ground.site;
+        self.arrange(site, &check.setup);
+        if let Hookup::Holds { device } = &check.hookup {
+            if matches!(value, ParsedValue::Word { word: Word::Trips }) {
+                self.tripped.insert(device.clone(), entry);
+            } else {
+                self.tripped.remove(device);
+            }
+        }
+        if let Some(volts) = stake_reading(site, check, value) {
+            self.stake = Some(StakeVolts { volts, entry });
+        }
+        let most = Some(ground.numbers.lift_amps);
+        let quiet = proves_quiet(check).map(|what| Proof { what, least: None, most, word: None });
+        for proof in check.proves.iter().chain(&quiet) {
+            if gives(proof, value) {
+                let places = check.at.split('+').map(str::to_owned).collect();
+                self.proofs.insert(proof.what.clone(), Gained { entry, places });
+            } else {
+                self.proofs.remove(&proof.what);
+            }
+        }
+    }
+
+    fn repaired(&mut self, site: &Site, places: &[String], by_network: bool) {
+        let mut all = places.to_vec();
+        if by_network {
+            self.network_attended = true;
+            all.push("service".to_owned());
+        }
+        self.withdraw(site, &all);
+        self.stake = None;
+        self.tripped.clear();
+    }
+
+    fn resumed(&mut self) {
+        self.dead.clear();
+        self.done.retain(|_, d| d.stage == Stage::MakeSafe);
+        // What holds for the whole site hangs on a supply that may have changed meanwhile.
+        self.proofs.retain(|what, gained| !gained.is_site_wide(what));
+        self.stake = None;
+    }
+
+    fn retracted(&mut self, entry: u64) {
+        self.dead.retain(|p| p.entry != entry);
+        self.done.retain(|_, d| d.entry != entry);
+        self.cannot.retain(|_, (_, e)| *e != entry);
+        self.proofs.retain(|_, gained| gained.entry != entry);
+        self.tripped.retain(|_, e| *e != entry);
+        if self.stake.is_some_and(|s| s.entry == entry) {
+            self.stake = None;
+        }
+    }
+
+    /// Withdraws proofs of conditions at the places, and those of the whole site where a place is one
+    /// that the supply's neutral or the earthing passes through.
+    fn withdraw(&mut self, site: &Site, places: &[String]) {
+        let common = |p: &String| {
+            matches!(p.as_str(), "service" | "network" | "electrode")
+                || site.board_index(p.split('.').next().unwrap_or(p)).is_some()
+        };
+        let wide = places.iter().any(common);
+        self.proofs.retain(|what, gained| {
+            if gained.is_site_wide(what) {
+                return !wide;
+            }
+            !places.iter().any(|place| gained.sits_at(what, place))
+        });
+    }
+}
+
+impl Gained {
+    /// No place in its words: it holds for the whole site.
+    fn is_site_wide(&self, what: &str) -> bool {
+        !self.places.iter().any(|place| !place.is_empty() && what.split(' ').any(|word| overlaps(word, place)))
+    }
+
+    fn sits_at(&self, what: &str, place: &str) -> bool {
+        what.split(' ').any(|word| overlaps(word, place)) || self.places.iter().any(|own| overlaps(own, place))
+    }
+}
+
+/// Whether two places are one, or one lies within the other.
+fn overlaps(a: &str, b: &str) -> bool {
+    let within = |inner: &str, outer: &str| inner.strip_prefix(outer).is_some_and(|rest| rest.starts_with('.'));
+    a == b || within(a, b) || within(b, a)
+}
+
+/// The place whose proofs fall when an end is lifted or landed: a cut cable touches its whole circuit.
+fn touched_by(site: &Site, end: &str) -> String {
+    let place = place_of_end(site, end);
+    match place.split_once('.') {
+        Some((circuit, _)) => circuit.to_owned(),
+        None => place,
+    }
+}
+
+/// Whether going from one setup to another closes a device, lands an end, or lets a source feed.
+fn gives_back(from: &Setup, to: &Setup) -> bool {
+    from.open.iter().any(|device| !to.open.contains(device))
+        || from.lift.iter().any(|end| !to.lift.contains(end))
+        || to.sources.iter().any(|(id, mode)| *mode != SourceMode::Off && from.sources.get(id) == Some(&SourceMode::Off))
+}
+
+/// Whether a reading gives a proof: all of it on the right side, a bound only where the bound says so.
+fn gives(proof: &Proof, value: &ParsedValue) -> bool {
+    let (low, high) = match value {
+        ParsedValue::Value { value } => (*value, *value),
+        ParsedValue::Range { low, high } => (*low, *high),
+        ParsedValue::Over { over } => (*over, f64::INFINITY),
+        ParsedValue::Under { under } => (f64::NEG_INFINITY, *under),
+        ParsedValue::Word { word } => {
+            let infinite = *word == Word::Open;
+            let named = proof.word.as_deref().is_none_or(|wanted| says(*word, wanted));
+            return if proof.word.is_some() { named } else { infinite && proof.most.is_none() && proof.least.is_some() };
+        }
+    };
+    proof.word.is_none() && proof.least.is_none_or(|least| low >= least) && proof.most.is_none_or(|most| high <= most)
+}
+
+/// Whether a word is written so.
+fn says(word: Word, wanted: &str) -> bool {
+    serde_json::to_value(word).is_ok_and(|v| v.as_str() == Some(wanted))
+}
+
+/// The volts of a reading from the main earth bar to a stake, nothing lifted; else nothing.
+fn stake_reading(site: &Site, check: &Check, value: &ParsedValue) -> Option<f64> {
+    if !is_stake_check(site, check) {
+        return None;
+    }
+    match value {
+        ParsedValue::Value { value } => Some(value.abs()),
+        ParsedValue::Range { low, high } => Some(low.abs().max(high.abs())),
+        ParsedValue::Over { .. } => Some(f64::INFINITY),
+        ParsedValue::Under { under } => Some(under.abs()),
+        ParsedValue::Word { .. } => None,
+    }
+}
+
+/// Whether a check reads volts from the main earth bar to an independent stake with everything as found.
+pub(super) fn is_stake_check(site: &Site, check: &Check) -> bool {
+    let Hookup::Volts { between, .. } = &check.hookup else { return false };
+    let bar = site.boards.get(site.main_board).map(|b| format!("{}.PE", b.id));
+    let pair = between.contains(&"soil".to_owned()) && bar.is_some_and(|bar| between.contains(&bar));
+    let setup = &check.setup;
+    pair && setup.lift.is_empty()
+        && setup.open.is_empty()
+        && setup.load.is_empty()
+        && setup.on.is_empty()
+        && setup.provoke.is_none()
+}
