@@ -5,6 +5,27 @@
 //! (the right side minus U falls with U wherever U/Z(U), the body's current, rises; so it does in every
 //! row of the tables). Valid hand to hand, 50/60 Hz, large contact areas.
 
+use crate::knowledge::BodyRow;
+
+/// Why a table of body impedance cannot be used.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum BodyError {
+    /// No such row.
+    #[error("knowledge has no body table `{table}` at {percentile} %: add the row to bodies.toml")]
+    Missing {
+        /// Table asked for.
+        table: String,
+        /// Percentile asked for.
+        percentile: f64,
+    },
+    /// Columns that do not belong together.
+    #[error("body table `{table}`: volts must rise, ohms be positive, and both lists be equally long")]
+    Bad {
+        /// Table.
+        table: String,
+    },
+}
+
 /// Touch voltage and current of one body.
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
 pub struct Touch {
@@ -21,6 +42,18 @@ pub struct Body {
 }
 
 impl Body {
+    /// From the row of a table and percentile.
+    ///
+    /// # Errors
+    /// [`BodyError`] where the row is missing or its columns do not fit.
+    pub fn from_rows(rows: &[BodyRow], table: &str, percentile: f64) -> Result<Self, BodyError> {
+        let row = rows
+            .iter()
+            .find(|r| r.table == table && r.percentile == percentile)
+            .ok_or_else(|| BodyError::Missing { table: table.to_owned(), percentile })?;
+        Self::new(&row.volts, &row.ohms).ok_or_else(|| BodyError::Bad { table: table.to_owned() })
+    }
+
     /// From two columns; nothing where they do not fit.
     pub fn new(volts: &[f64], ohms: &[f64]) -> Option<Self> {
         let rising = volts.windows(2).all(|w| matches!(w, [a, b] if a < b));

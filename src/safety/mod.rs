@@ -17,7 +17,7 @@ mod wants;
 mod words;
 
 
-pub use body::{Body, Touch};
+pub use body::{Body, BodyError, Touch};
 pub use gate::{Cleared, Gate, ReadingStop, Verdict};
 pub use hazard::{Assessment, HazardBook, Hazards, Raised, Simulator, World};
 pub use hold::{HoldPoint, Stage, Want};
