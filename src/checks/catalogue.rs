@@ -77,6 +77,7 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
         hazard: form.hazard.as_ref().map(|text| filler.text(text)).transpose()?,
         limits: form.limits.clone(),
         recheck_only: form.recheck_only,
+        staged: form.staged,
         place: stand(instance, site),
     })
 }
