@@ -703,6 +703,9 @@ pub struct SafetyRow {
     /// Volts from earth bar to soil above which main earth and link stay where they are.
     #[serde(default = "default_earth_lift_volts")]
     pub earth_lift_volts: f64,
+    /// Probability of live metal as found above which everyone is kept off it before any test.
+    #[serde(default = "default_standing")]
+    pub standing: f64,
 }
 
 fn default_earth_proof() -> String {
@@ -711,6 +714,10 @@ fn default_earth_proof() -> String {
 
 fn default_earth_lift_volts() -> f64 {
     2.0
+}
+
+fn default_standing() -> f64 {
+    0.05
 }
 
 /// Expected shares of what is not a fault kind, in the units of `presence`.

@@ -2,7 +2,7 @@
 
 use super::Ground;
 use super::hazard::{Assessment, Hazards};
-use super::hold::{HoldPoint, Stage, hold_points, isolation, state_key};
+use super::hold::{HoldPoint, Stage, hold_points, isolation, make_safe, marked, state_key};
 use super::rules::{self, Refusal, quiet_check, quiet_proof};
 use super::state::State;
 use crate::checks::Check;
@@ -99,12 +99,16 @@ impl<'a> Gate<'a> {
 
     /// Clears, holds or refuses a check as things stand. Without `hazards` the rules alone judge: for lists
     /// that nobody acts on, never for advice.
-    pub fn clear(&self, check: &Check, state: &State, hazards: Option<&mut Hazards<'_>>) -> Verdict {
+    pub fn clear(&self, check: &Check, state: &State, mut hazards: Option<&mut Hazards<'_>>) -> Verdict {
         if let Some(refusal) = rules::refusal(&self.ground, state, check) {
             return Verdict::Refused(refusal);
         }
         let mut points = hold_points(&self.ground, state, check);
-        let assessment = hazards.map(|h| h.assess(&self.ground, check)).unwrap_or_default();
+        let assessment = hazards.as_deref_mut().map(|h| h.assess(&self.ground, check)).unwrap_or_default();
+        let live = hazards.is_some_and(|h| h.standing_probability(&self.ground) > self.ground.numbers.standing);
+        if live && !points.iter().any(|p| p.stage == Stage::MakeSafe) {
+            points.insert(0, make_safe(state));
+        }
         if let Some(refusal) = self.weigh(check, state, &assessment, &mut points) {
             return Verdict::Refused(refusal);
         }
@@ -201,7 +205,7 @@ impl<'a> Gate<'a> {
         // The id stays the same while the odds move the number in the text.
         let key = format!("keep-clear frames {}", state_key(&check.setup));
         let mut point = HoldPoint {
-            point: super::hold::marked("keep-clear", &key),
+            point: marked("keep-clear", &key),
             text: format!("Nobody touches it while the test is on: {danger}. Say so, and stand where you see it."),
             setup: check.setup.clone(),
             wants: Vec::new(),

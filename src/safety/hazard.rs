@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 use super::Ground;
 use super::body::{Body, Touch};
 use super::exposure::{Stance, stances, touchables};
-use super::hold::isolates;
+use super::hold::{Want, isolates};
 use super::wants::before_lift;
 use super::words::terminal_name;
 use crate::checks::Check;
@@ -84,9 +84,10 @@ struct Finding {
 /// Findings kept between questions: they depend on stance and hypothesis, not on the odds.
 #[derive(Clone, Debug, Default)]
 pub struct HazardBook {
-    found: BTreeMap<(String, String), Finding>,
-    dead: BTreeMap<(String, String), Option<Raised>>,
-    as_found: BTreeMap<String, Vec<Touch>>,
+    found: BTreeMap<String, BTreeMap<String, Finding>>,
+    dead: BTreeMap<String, BTreeMap<String, Option<Raised>>>,
+    /// By hypothesis, then draw, then pair.
+    as_found: BTreeMap<String, Vec<Vec<Touch>>>,
 }
 
 impl HazardBook {
@@ -102,48 +103,54 @@ impl HazardBook {
 
     /// Forgets one hypothesis (its draws were renewed).
     pub fn forget(&mut self, world: &str) {
-        self.found.retain(|(_, id), _| id != world);
-        self.dead.retain(|(_, id), _| id != world);
+        self.found.values_mut().for_each(|by_world| drop(by_world.remove(world)));
+        self.dead.values_mut().for_each(|by_world| drop(by_world.remove(world)));
         self.as_found.remove(world);
     }
 }
 
 /// Everything the gate needs to simulate a check.
 pub struct Hazards<'a> {
-    /// Findings so far.
-    pub book: &'a mut HazardBook,
-    /// Hypotheses; those under `SafetyRow::credible` are passed over.
-    pub worlds: &'a [World],
-    /// Impedance of the body.
-    pub body: &'a Body,
-    /// The solver.
-    pub simulator: &'a mut dyn Simulator,
+    book: &'a mut HazardBook,
+    worlds: &'a [World],
+    body: &'a Body,
+    simulator: &'a mut dyn Simulator,
+    standing: Option<f64>,
 }
 
 /// Ohms across which a source is loaded to find what lies behind it.
 const PROBE_OHMS: f64 = 1000.0;
 
-impl Hazards<'_> {
+impl<'a> Hazards<'a> {
+    /// With the findings so far, the hypotheses (those under `SafetyRow::credible` are passed over), a body,
+    /// and a solver.
+    pub fn new(
+        book: &'a mut HazardBook,
+        worlds: &'a [World],
+        body: &'a Body,
+        simulator: &'a mut dyn Simulator,
+    ) -> Self {
+        Self { book, worlds, body, simulator, standing: None }
+    }
+
     /// Simulates a check under every credible hypothesis.
     pub fn assess(&mut self, ground: &Ground<'_>, check: &Check) -> Assessment {
         let mut result = Assessment::default();
-        let all = stances(ground, check);
-        if all.is_empty() {
-            return result;
-        }
-        let worlds: Vec<&World> = self.worlds.iter().filter(|w| w.p >= ground.numbers.credible).collect();
-        for world in worlds {
-            for stance in &all {
-                let finding = self.finding(ground, world, stance);
+        let all: Vec<(String, Stance)> = stances(ground, check).into_iter().map(|s| (s.key(), s)).collect();
+        let wants = if isolates(check) { before_lift(ground, check) } else { Vec::new() };
+        let names: Vec<&str> = wants.iter().map(|w| w.name.as_str()).collect();
+        let dead_key = all.first().map(|(key, _)| format!("{key}|{}", names.join("+")));
+        let worlds = self.worlds;
+        for world in worlds.iter().filter(|w| !all.is_empty() && w.p >= ground.numbers.credible) {
+            for (key, stance) in &all {
+                let finding = self.finding(ground, world, key, stance);
                 keep_worst(&mut result.touch, finding.touch, world.p);
                 for raised in finding.lifting {
                     keep_worst(&mut result.lifting, Some(raised), world.p);
                 }
             }
-            if isolates(check)
-                && let Some(first) = all.first()
-            {
-                let dead = self.not_dead(ground, world, check, first);
+            if let (Some((_, first)), Some(key), false) = (all.first(), &dead_key, wants.is_empty()) {
+                let dead = self.not_dead(world, key, first, &wants);
                 keep_worst(&mut result.not_dead, dead, world.p);
             }
         }
@@ -154,34 +161,47 @@ impl Hazards<'_> {
     pub fn standing(&mut self, ground: &Ground<'_>) -> Option<Raised> {
         let mut worst = None;
         let pairs = touchables(ground);
-        let worlds: Vec<&World> = self.worlds.iter().filter(|w| w.p >= ground.numbers.credible).collect();
-        for world in worlds {
-            let as_found = self.as_found(ground, world);
-            for ((between, local), touch) in pairs.iter().zip(as_found) {
-                if over(ground, touch) {
-                    keep_worst(&mut worst, Some(raised(between, touch, world, *local)), world.p);
+        let worlds = self.worlds;
+        for world in worlds.iter().filter(|w| w.p >= ground.numbers.credible) {
+            for touches in self.as_found(ground, world) {
+                for ((between, local), touch) in pairs.iter().zip(touches) {
+                    if over(ground, touch) {
+                        keep_worst(&mut worst, Some(raised(between, touch, world, *local)), world.p);
+                    }
                 }
             }
         }
         worst
     }
 
-    fn as_found(&mut self, ground: &Ground<'_>, world: &World) -> Vec<Touch> {
+    /// Probability that metal which many may touch is live as found.
+    pub fn standing_probability(&mut self, ground: &Ground<'_>) -> f64 {
+        if let Some(known) = self.standing {
+            return known;
+        }
+        let pairs = touchables(ground);
+        let worlds = self.worlds;
+        let mut sum = 0.0;
+        for world in worlds.iter().filter(|w| w.p >= ground.numbers.credible) {
+            let draws = self.as_found(ground, world);
+            let live = |touches: &Vec<Touch>| pairs.iter().zip(touches).any(|((_, local), t)| !local && over(ground, *t));
+            let share = draws.iter().filter(|t| live(t)).count() as f64 / draws.len().max(1) as f64;
+            sum += world.p * share;
+        }
+        self.standing = Some(sum);
+        sum
+    }
+
+    fn as_found(&mut self, ground: &Ground<'_>, world: &World) -> Vec<Vec<Touch>> {
         if let Some(known) = self.book.as_found.get(&world.id) {
             return known.clone();
         }
         let pairs = touchables(ground);
-        let mut worst = vec![Touch::default(); pairs.len()];
-        for draw in 0..world.draws {
-            let touches = self.touches(world, draw, &Setup::default(), &[], &pairs, 0.0);
-            for (slot, touch) in worst.iter_mut().zip(touches) {
-                if touch.volts > slot.volts {
-                    *slot = touch;
-                }
-            }
-        }
-        self.book.as_found.insert(world.id.clone(), worst.clone());
-        worst
+        let floor = floor(ground);
+        let draws: Vec<Vec<Touch>> =
+            (0..world.draws).map(|draw| self.touches(world, draw, &Setup::default(), &[], &pairs, floor)).collect();
+        self.book.as_found.insert(world.id.clone(), draws.clone());
+        draws
     }
 
     /// Touch across each pair; those under `floor` volts open are not looked into.
@@ -222,22 +242,19 @@ impl Hazards<'_> {
         touches
     }
 
-    fn finding(&mut self, ground: &Ground<'_>, world: &World, stance: &Stance) -> Finding {
-        let key = (stance.key(), world.id.clone());
-        if let Some(known) = self.book.found.get(&key) {
+    fn finding(&mut self, ground: &Ground<'_>, world: &World, key: &str, stance: &Stance) -> Finding {
+        if let Some(known) = self.book.found.get(key).and_then(|by_world| by_world.get(&world.id)) {
             return known.clone();
         }
         let pairs = touchables(ground);
         let mut finding = Finding::default();
-        let mut as_found: Option<Vec<Touch>> = None;
         for draw in 0..world.draws {
-            // The least volts at which any table of the body passes the limit of current.
-            let floor = (ground.numbers.body_amps * 500.0).min(ground.numbers.touch_volts);
-            let touches = self.touches(world, draw, &stance.setup, &stance.burden, &pairs, floor);
+            let touches = self.touches(world, draw, &stance.setup, &stance.burden, &pairs, floor(ground));
             if touches.iter().any(|t| over(ground, *t)) {
-                let before = as_found.get_or_insert_with(|| self.as_found(ground, world));
+                let before = self.as_found(ground, world);
+                let before = before.get(draw);
                 for (index, ((between, local), touch)) in pairs.iter().zip(&touches).enumerate() {
-                    let was = before.get(index).copied().unwrap_or_default();
+                    let was = before.and_then(|all| all.get(index)).copied().unwrap_or_default();
                     if raises(ground, was, *touch) {
                         keep_worst(&mut finding.touch, Some(raised(between, *touch, world, *local)), world.p);
                     }
@@ -247,7 +264,7 @@ impl Hazards<'_> {
                 self.lifting(ground, world, draw, stance, &mut finding);
             }
         }
-        self.book.found.insert(key, finding.clone());
+        self.book.found.entry(key.to_owned()).or_default().insert(world.id.clone(), finding.clone());
         finding
     }
 
@@ -271,17 +288,14 @@ impl Hazards<'_> {
     }
 
     /// The worst wanted reading over its limit once isolated.
-    fn not_dead(&mut self, ground: &Ground<'_>, world: &World, check: &Check, stance: &Stance) -> Option<Raised> {
-        let wants = before_lift(ground, check);
-        let names: Vec<&str> = wants.iter().map(|w| w.name.as_str()).collect();
-        let key = (format!("{}|{}", stance.key(), names.join("+")), world.id.clone());
-        if let Some(known) = self.book.dead.get(&key) {
+    fn not_dead(&mut self, world: &World, key: &str, stance: &Stance, wants: &[Want]) -> Option<Raised> {
+        if let Some(known) = self.book.dead.get(key).and_then(|by_world| by_world.get(&world.id)) {
             return known.clone();
         }
         let mut worst: Option<Raised> = None;
+        let hookups: Vec<Hookup> =
+            wants.iter().map(|w| Hookup::Volts { between: w.between.clone(), meter: None }).collect();
         for draw in 0..world.draws {
-            let hookups: Vec<Hookup> =
-                wants.iter().map(|w| Hookup::Volts { between: w.between.clone(), meter: None }).collect();
             let volts = self.simulator.read(world, draw, &stance.setup, &[], &hookups);
             for (want, volts) in wants.iter().zip(volts) {
                 let volts = volts.unwrap_or(0.0).abs();
@@ -291,9 +305,14 @@ impl Hazards<'_> {
                 }
             }
         }
-        self.book.dead.insert(key, worst.clone());
+        self.book.dead.entry(key.to_owned()).or_default().insert(world.id.clone(), worst.clone());
         worst
     }
+}
+
+/// The least open volts at which a body of 500 Ω, less than any table's, passes the limit of current.
+fn floor(ground: &Ground<'_>) -> f64 {
+    (ground.numbers.body_amps * 500.0).min(ground.numbers.touch_volts)
 }
 
 fn raised(between: &[String; 2], touch: Touch, world: &World, local: bool) -> Raised {

@@ -170,14 +170,6 @@ impl Builder<'_> {
         self.points.push(point);
     }
 
-    fn make_safe(&mut self) {
-        if self.state.is_standing() {
-            let text = "Keep everyone off taps, pipes, metal and the switchboard, and out of wet places. Ring the \
-                        network operator's emergency line. Treat neutral, earth, enclosures and pipes as live.";
-            self.push(Stage::MakeSafe, "make-safe", "", &Setup::default(), text.to_owned(), Vec::new());
-        }
-    }
-
     fn identify(&mut self) {
         let site = self.ground.site;
         let mut sources: Vec<String> = site.boards.iter().flat_map(|b| &b.mains).map(|m| m.id.clone()).collect();
@@ -420,10 +412,31 @@ fn isolate_text(ground: &Ground<'_>, off: &Setup) -> String {
     )
 }
 
+/// The point that comes before everything where metal may be live as found.
+pub(super) fn make_safe(state: &State) -> HoldPoint {
+    let text = "Keep everyone off taps, pipes, metal and the switchboard, and out of wet places. Ring the network \
+                operator's emergency line. Treat neutral, earth, enclosures and pipes as live.";
+    let mut point = HoldPoint {
+        point: "make-safe".to_owned(),
+        text: text.to_owned(),
+        setup: Setup::default(),
+        wants: Vec::new(),
+        test: None,
+        at: None,
+        done: false,
+        stage: Stage::MakeSafe,
+        key: String::new(),
+    };
+    point.done = state.done(&point).is_some();
+    point
+}
+
 /// The hold points of a check in the present state, in order, each with whether it is done.
 pub(super) fn hold_points(ground: &Ground<'_>, state: &State, check: &Check) -> Vec<HoldPoint> {
     let mut builder = Builder { ground, state, check, points: Vec::new() };
-    builder.make_safe();
+    if state.is_standing() {
+        builder.points.push(make_safe(state));
+    }
     let lifts = builder.lifts_now();
     let chain = isolates(check) && (!check.energised || lifts);
     if chain || state.lifted().iter().any(|end| !check.setup.lift.contains(end)) {

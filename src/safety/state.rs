@@ -461,10 +461,6 @@ pub(super) fn is_stake_check(site: &Site, check: &Check) -> bool {
     let Hookup::Volts { between, .. } = &check.hookup else { return false };
     let bar = site.boards.get(site.main_board).map(|b| format!("{}.PE", b.id));
     let pair = between.contains(&"soil".to_owned()) && bar.is_some_and(|bar| between.contains(&bar));
-    let setup = &check.setup;
-    pair && setup.lift.is_empty()
-        && setup.open.is_empty()
-        && setup.load.is_empty()
-        && setup.on.is_empty()
-        && setup.provoke.is_none()
+    let as_found = Setup { closed: check.setup.closed.clone(), ..Setup::default() };
+    pair && check.setup == as_found
 }
