@@ -80,7 +80,7 @@ fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<P
 /// The neutral bars of a board, `msb.N` and `msb.rcd1.N`, as places of their terminals.
 pub(crate) fn bars(site: &Site, board: usize) -> Vec<Place> {
     let Some(home) = site.boards.get(board) else { return Vec::new() };
-    let bar = |id: String| Place { id, spot: place::Spot::Board(board) };
+    let bar = |id: String| Place { id, spot: crate::site::Spot::Board(board) };
     let rcds = home.rcds.iter().map(|r| bar(format!("{}.{}.N", home.id, r.id)));
     std::iter::once(bar(format!("{}.N", home.id))).chain(rcds).collect()
 }

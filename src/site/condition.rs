@@ -1,7 +1,8 @@
 //! Conditions on a place: the words of `only` in knowledge.
 
 use super::model::{Board, Class, Feed, PointKind, Site, System};
-use super::place::{Place, Spot};
+use super::place::Place;
+use super::spot::Spot;
 use crate::knowledge::EquipmentRow;
 
 /// Whether a place meets a condition of [`crate::knowledge::words::ONLY`]; `None`: no such word.
@@ -29,20 +30,31 @@ pub fn holds(word: &str, place: &Place, site: &Site, equipment: &[EquipmentRow])
             Feed::Submain { cable, .. } => cable.pe_mm2.is_some(),
             Feed::Service => true,
         }),
-        "switched-neutral" => board(|b| !b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral())),
-        "solid-neutral" => board(|b| !(!b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral()))),
+        "switched-neutral" => {
+            board(|b| !b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral()))
+        }
+        "solid-neutral" => {
+            board(|b| !(!b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral())))
+        }
         "switched-rcd" => rcd().is_some_and(|r| r.poles != 1),
         "delayed" => rcd().is_some_and(|r| r.delayed),
         "not-delayed" => rcd().is_some_and(|r| !r.delayed),
         "on-rcd" => place.rcd(site).is_some(),
         "other-bar" | "nearest-point" => true,
         "light-or-switch" => match place.spot {
-            Spot::Point(p) => matches!(site.point(p).kind, PointKind::Light | PointKind::Switch | PointKind::Junction),
+            Spot::Point(p) => matches!(
+                site.point(p).kind,
+                PointKind::Light | PointKind::Switch | PointKind::Junction
+            ),
             _ => false,
         },
         "class-I" => device.is_some_and(|e| e.class == Class::I),
         "class-II" => device.is_some_and(|e| e.class == Class::II),
-        "element" => device.is_some_and(|e| equipment.iter().any(|row| row.kind == e.kind && row.element)),
+        "element" => device.is_some_and(|e| {
+            equipment
+                .iter()
+                .any(|row| row.kind == e.kind && row.element)
+        }),
         "plug" => device.is_some_and(|e| e.plug),
         "fixed" => device.is_some_and(|e| !e.plug),
         "three-phase" => site.supply.phases == 3,

@@ -1,13 +1,23 @@
 //! The installation: what is there and how it hangs together (contract §1).
 
-pub mod file;
 pub mod condition;
+pub mod file;
 pub mod lookup;
 pub mod model;
+pub mod names;
 pub mod place;
+#[cfg(test)]
+pub mod samples;
+pub mod spot;
+pub mod terminals;
+pub mod words;
 
-pub use file::{Known, SiteError, SiteWarning, load_path, load_str, load_value};
 pub use condition::holds;
+pub use file::{Known, LoadedFile, SiteError, SiteWarning, load_path, load_str, load_value};
 pub use lookup::lines_of;
 pub use model::*;
-pub use place::{Place, Spot, circuit_pairs, places};
+pub use names::name_of;
+pub use place::{Place, circuit_pairs, places};
+pub use spot::{Spot, spots};
+pub use terminals::{devices, ends, terminals};
+pub use words::{Words, words};

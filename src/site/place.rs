@@ -1,32 +1,10 @@
 //! Places of a site by class, and the names that templates of knowledge take at each of them.
 
 use super::lookup::lines_of;
-use super::model::{Feed, Phase, PointRef, Site, SourcePlace, WordSet};
-
-/// Where a place is in the site.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Spot {
-    /// The service cable.
-    Service,
-    /// The network beyond it.
-    Network,
-    /// A board.
-    Board(usize),
-    /// A point.
-    Point(PointRef),
-    /// A circuit of a board.
-    Circuit(usize, usize),
-    /// A piece of equipment.
-    Equipment(usize),
-    /// An RCD of a board.
-    Rcd(usize, usize),
-    /// A bond.
-    Bond(usize),
-    /// The electrode of a board.
-    Electrode(usize),
-    /// A source that can backfeed.
-    Source(usize),
-}
+use super::model::{Feed, Phase, PointRef, Site, SourcePlace};
+use super::names::name_of;
+use super::spot::Spot;
+use super::words::words;
 
 /// A place: its id and where it is.
 #[derive(Clone, Debug, PartialEq)]
@@ -44,33 +22,71 @@ pub fn places(site: &Site, class: &str) -> Vec<Place> {
     match class {
         "service" => vec![place("service".into(), Spot::Service)],
         "network" => vec![place("network".into(), Spot::Network)],
-        "board" => each_board(site, |b| vec![place(site.boards[b].id.clone(), Spot::Board(b))]),
+        "board" => each_board(site, |b| {
+            vec![place(site.boards[b].id.clone(), Spot::Board(b))]
+        }),
         "circuit" => each_board(site, |b| {
             let circuits = site.boards[b].circuits.iter().enumerate();
-            circuits.map(|(c, circuit)| place(circuit.id.clone(), Spot::Circuit(b, c))).collect()
+            circuits
+                .map(|(c, circuit)| place(circuit.id.clone(), Spot::Circuit(b, c)))
+                .collect()
         }),
         "point" => each_board(site, |board| {
             let circuits = site.boards[board].circuits.iter().enumerate();
             circuits
                 .flat_map(|(circuit, it)| {
                     it.points.iter().enumerate().map(move |(point, p)| {
-                        place(format!("{}.{}", it.id, p.id), Spot::Point(PointRef { board, circuit, point }))
+                        place(
+                            format!("{}.{}", it.id, p.id),
+                            Spot::Point(PointRef {
+                                board,
+                                circuit,
+                                point,
+                            }),
+                        )
                     })
                 })
                 .collect()
         }),
         "rcd" => each_board(site, |b| {
             let rcds = site.boards[b].rcds.iter().enumerate();
-            rcds.map(|(r, rcd)| place(rcd.id.clone(), Spot::Rcd(b, r))).collect()
+            rcds.map(|(r, rcd)| place(rcd.id.clone(), Spot::Rcd(b, r)))
+                .collect()
         }),
         "electrode" => each_board(site, |b| {
-            let has = site.boards[b].earthing.as_ref().is_some_and(|e| e.main_earth.is_some());
-            let id = if b == site.main_board { "electrode".to_owned() } else { format!("{}.electrode", site.boards[b].id) };
-            if has { vec![place(id, Spot::Electrode(b))] } else { Vec::new() }
+            let has = site.boards[b]
+                .earthing
+                .as_ref()
+                .is_some_and(|e| e.main_earth.is_some());
+            let id = if b == site.main_board {
+                "electrode".to_owned()
+            } else {
+                format!("{}.electrode", site.boards[b].id)
+            };
+            if has {
+                vec![place(id, Spot::Electrode(b))]
+            } else {
+                Vec::new()
+            }
         }),
-        "equipment" => site.equipment.iter().enumerate().map(|(i, e)| place(e.id.clone(), Spot::Equipment(i))).collect(),
-        "bond" => site.bonds.iter().enumerate().map(|(i, b)| place(b.id.clone(), Spot::Bond(i))).collect(),
-        "source" => site.sources.iter().enumerate().map(|(i, s)| place(s.id.clone(), Spot::Source(i))).collect(),
+        "equipment" => site
+            .equipment
+            .iter()
+            .enumerate()
+            .map(|(i, e)| place(e.id.clone(), Spot::Equipment(i)))
+            .collect(),
+        "bond" => site
+            .bonds
+            .iter()
+            .enumerate()
+            .map(|(i, b)| place(b.id.clone(), Spot::Bond(i)))
+            .collect(),
+        "source" => site
+            .sources
+            .iter()
+            .enumerate()
+            .map(|(i, s)| place(s.id.clone(), Spot::Source(i)))
+            .collect(),
         _ => Vec::new(),
     }
 }
@@ -81,7 +97,10 @@ fn each_board(site: &Site, f: impl Fn(usize) -> Vec<Place>) -> Vec<Place> {
 
 /// The place of that id among the classes given.
 pub fn find(site: &Site, classes: &[String], id: &str) -> Option<Place> {
-    classes.iter().flat_map(|class| places(site, class)).find(|place| place.id == id)
+    classes
+        .iter()
+        .flat_map(|class| places(site, class))
+        .find(|place| place.id == id)
 }
 
 impl Place {
@@ -113,10 +132,12 @@ impl Place {
     pub fn board(&self, site: &Site) -> usize {
         match self.spot {
             Spot::Board(b) | Spot::Circuit(b, _) | Spot::Rcd(b, _) | Spot::Electrode(b) => b,
-            Spot::Source(s) if self.point(site).is_none() => match site.sources.get(s).map(|s| &s.at) {
-                Some(SourcePlace::Board(b)) => *b,
-                _ => site.main_board,
-            },
+            Spot::Source(s) if self.point(site).is_none() => {
+                match site.sources.get(s).map(|s| &s.at) {
+                    Some(SourcePlace::Board(b)) => *b,
+                    _ => site.main_board,
+                }
+            }
             _ => self.point(site).map_or(site.main_board, |p| p.board),
         }
     }
@@ -125,13 +146,27 @@ impl Place {
     /// board that of its submain, of an RCD itself.
     pub fn rcd<'a>(&self, site: &'a Site) -> Option<(usize, &'a str)> {
         if let Spot::Rcd(b, r) = self.spot {
-            return site.boards.get(b)?.rcds.get(r).map(|rcd| (b, rcd.id.as_str()));
+            return site
+                .boards
+                .get(b)?
+                .rcds
+                .get(r)
+                .map(|rcd| (b, rcd.id.as_str()));
         }
         if let Some((b, c)) = self.circuit(site) {
-            return site.boards.get(b)?.circuits.get(c)?.rcd.as_deref().map(|r| (b, r));
+            return site
+                .boards
+                .get(b)?
+                .circuits
+                .get(c)?
+                .rcd
+                .as_deref()
+                .map(|r| (b, r));
         }
         match (self.spot, &site.boards.get(self.board(site))?.feed) {
-            (Spot::Board(_), Feed::Submain { board, rcd, .. }) => rcd.as_deref().map(|r| (*board, r)),
+            (Spot::Board(_), Feed::Submain { board, rcd, .. }) => {
+                rcd.as_deref().map(|r| (*board, r))
+            }
             _ => None,
         }
     }
@@ -139,7 +174,11 @@ impl Place {
     /// What its bars hang on, as terminals name it: the RCD as `msb.rcd1`, else the board as `msb`; of a
     /// board that a submain feeds, the bars of the board that feeds it.
     pub fn bus(&self, site: &Site) -> String {
-        let id = |b: usize| site.boards.get(b).map_or_else(String::new, |b| b.id.clone());
+        let id = |b: usize| {
+            site.boards
+                .get(b)
+                .map_or_else(String::new, |b| b.id.clone())
+        };
         match self.rcd(site) {
             Some((b, rcd)) => format!("{}.{rcd}", id(b)),
             None => id(self.feeding_board(site)),
@@ -161,24 +200,16 @@ impl Place {
         if let Some((b, c)) = self.circuit(site) {
             return site.boards.get(b)?.circuits.get(c)?.main.as_deref();
         }
-        site.boards.get(self.board(site))?.mains.first().map(|m| m.id.as_str())
+        site.boards
+            .get(self.board(site))?
+            .mains
+            .first()
+            .map(|m| m.id.as_str())
     }
 
     /// What a person calls it.
     pub fn name(&self, site: &Site) -> String {
-        let board = |b: usize| site.boards.get(b).map_or("the board", |b| b.name.as_str());
-        match self.spot {
-            Spot::Service => "the service".to_owned(),
-            Spot::Network => "the network".to_owned(),
-            Spot::Board(b) => board(b).to_owned(),
-            Spot::Point(p) => format!("{} ({})", site.point(p).name, site.circuit_of(p).name),
-            Spot::Circuit(b, c) => site.boards[b].circuits[c].name.clone(),
-            Spot::Equipment(e) => site.equipment[e].name.clone(),
-            Spot::Rcd(b, r) => format!("{} at {}", site.boards[b].rcds[r].id, board(b)),
-            Spot::Bond(b) => site.bonds[b].name.clone(),
-            Spot::Electrode(b) => format!("the electrode of {}", board(b)),
-            Spot::Source(s) => site.sources[s].id.clone(),
-        }
+        name_of(site, &self.id)
     }
 
     /// What a name in braces of [`crate::knowledge::words`] stands for at this place alone; `None`: the
@@ -188,7 +219,10 @@ impl Place {
             return Some(word.to_owned());
         }
         let board = || site.boards.get(self.feeding_board(site));
-        let circuit = || self.circuit(site).and_then(|(b, c)| site.boards.get(b)?.circuits.get(c));
+        let circuit = || {
+            self.circuit(site)
+                .and_then(|(b, c)| site.boards.get(b)?.circuits.get(c))
+        };
         match name {
             "at" => Some(self.id.clone()),
             "at-name" => Some(self.name(site)),
@@ -208,27 +242,12 @@ impl Place {
 impl Site {
     /// The trade's word for a conductor or thing, in this site's words.
     pub fn word(&self, name: &str) -> Option<&'static str> {
-        let au = self.words == WordSet::AuNz;
-        let pick = |au_nz, iec| Some(if au { au_nz } else { iec });
-        match name {
-            "line" => pick("active", "line"),
-            "neutral" => Some("neutral"),
-            "earth" => pick("earth", "PE"),
-            "link" => pick("neutral-earth link", "link of PEN and PE"),
-            "rcd-word" => pick("safety switch (RCD)", "RCD"),
-            _ => None,
-        }
+        words(self).word(name)
     }
 
     /// A conductor `L`, `L2`, `N`, `PE` in this site's words.
     pub fn conductor_name(&self, conductor: &str) -> String {
-        let word = |name| self.word(name).unwrap_or_default();
-        match conductor {
-            "L" => word("line").to_owned(),
-            "N" => word("neutral").to_owned(),
-            "PE" => word("earth").to_owned(),
-            other => format!("{} {other}", word("line")),
-        }
+        words(self).conductor(conductor)
     }
 
     /// Phases of the part that terminals name so: `service`, `msb`, `msb.rcd1`, `rcd1`, `c1`, `c1.p1`,
@@ -255,14 +274,23 @@ impl Site {
     ///
     /// Understands `X.L`, `X.L@board`, `into X.L`, `cord X.L`.
     pub fn on_line(&self, text: &str, line: Option<&str>) -> String {
-        let (body, landed) = text.split_once('@').map_or((text, None), |(body, at)| (body, Some(at)));
-        let Some(part) = body.strip_suffix(".L") else { return text.to_owned() };
+        let (body, landed) = text
+            .split_once('@')
+            .map_or((text, None), |(body, at)| (body, Some(at)));
+        let Some(part) = body.strip_suffix(".L") else {
+            return text.to_owned();
+        };
         let bare = part.rsplit(' ').next().unwrap_or(part);
         if self.phase_of(bare).map(lines_of) != Some(&["L1", "L2", "L3"]) {
             return text.to_owned();
         }
-        let line = line.filter(|l| l.len() == 2 && l.starts_with('L')).unwrap_or("L1");
-        landed.map_or_else(|| format!("{part}.{line}"), |at| format!("{part}.{line}@{at}"))
+        let line = line
+            .filter(|l| l.len() == 2 && l.starts_with('L'))
+            .unwrap_or("L1");
+        landed.map_or_else(
+            || format!("{part}.{line}"),
+            |at| format!("{part}.{line}@{at}"),
+        )
     }
 }
 

@@ -84,6 +84,9 @@ impl Known {
 
 impl From<&Knowledge> for Known {
     fn from(knowledge: &Knowledge) -> Self {
-        Self::new(&knowledge.equipment, knowledge.rules.iter().map(|r| r.id.as_str()))
+        Self::new(
+            &knowledge.equipment,
+            knowledge.rules.iter().map(|r| r.id.as_str()),
+        )
     }
 }
