@@ -1,7 +1,7 @@
 //! The places that a check's `each` selects.
 
 use crate::knowledge::EquipmentRow;
-use crate::site::{Phase, Place, PointKind, Site, Spot, circuit_pairs, holds, places};
+use crate::site::{Phase, Place, PointKind, PointRef, Site, Spot, circuit_pairs, holds, places};
 
 /// One instance of a check to be: its place, its id, and names beyond those of the place.
 #[derive(Clone, Debug, PartialEq)]
@@ -41,12 +41,23 @@ pub(crate) fn instances(each: &str, site: &Site, equipment: &[EquipmentRow]) -> 
                 .filter(|p| matches!(p.spot, Spot::Point(r) if site.point(r).kind == PointKind::Outlet))
                 .collect(),
         ),
+        "inner-point" => plain(
+            places(site, "point")
+                .into_iter()
+                .filter(|p| matches!(p.spot, Spot::Point(r) if goes_on(site, r)))
+                .collect(),
+        ),
         "last-point" => plain(per_circuit(site, |metres| farthest(metres))),
         "split" => plain(per_circuit(site, |metres| nearest_middle(metres))),
         "main-line" => main_lines(site, main_board()),
         "circuit-pair" => pairs(site),
         _ => return None,
     })
+}
+
+/// Whether another point goes on from this one.
+fn goes_on(site: &Site, point: PointRef) -> bool {
+    site.circuit_of(point).points.iter().any(|p| p.from == Some(point.point))
 }
 
 /// A point of each circuit, chosen by the points' metres.

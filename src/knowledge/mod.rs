@@ -7,8 +7,8 @@ mod parse;
 pub mod procedure;
 pub mod records;
 mod source;
-pub mod words;
 pub mod template;
+pub mod words;
 
 pub use issue::{Issue, KnowledgeError};
 pub use library::Knowledge;

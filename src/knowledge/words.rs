@@ -60,11 +60,11 @@ pub const EACH: &[Meaning] = &[
         "last-point",
         "of each circuit the point farthest from its board",
     ),
+    ("inner-point", "every point from which another goes on"),
+    (
         "split",
         "of each circuit with at least three points the one nearest its middle",
-    ("last-point", "of each circuit the point farthest from its board"),
-    ("inner-point", "every point from which another goes on"),
-    ("split", "of each circuit with at least three points the one nearest its middle"),
+    ),
     ("bond", "every bond"),
     ("equipment", "every piece of equipment"),
     ("plug-equipment", "equipment on a plug"),
@@ -96,21 +96,28 @@ pub const ONLY: &[Meaning] = &[
         "the place's board has its own main earth and electrode",
     ),
     ("submain", "the place's board is fed by a submain"),
+    ("main-board", "a board: the one that the service feeds"),
+    (
+        "unlinked",
+        "a board: it has no link of its own, as meant; any other place fits",
+    ),
+    ("fed", "a board: a submain feeds it; any other place fits"),
+    (
+        "fed-earth",
+        "a board: a submain with an earth conductor feeds it; any other place fits",
+    ),
     (
         "has-pe",
         "an earth conductor runs to the place with its feed (all but a submain with `pe_mm2` null)",
     ),
+    (
         "switched-neutral",
         "every main switch of the place's board opens the neutral",
+    ),
+    (
         "solid-neutral",
         "a main switch of the place's board leaves the neutral closed",
-    ("main-board", "a board: the one that the service feeds"),
-    ("unlinked", "a board: it has no link of its own, as meant; any other place fits"),
-    ("fed", "a board: a submain feeds it; any other place fits"),
-    ("fed-earth", "a board: a submain with an earth conductor feeds it; any other place fits"),
-    ("has-pe", "an earth conductor runs to the place with its feed (all but a submain with `pe_mm2` null)"),
-    ("switched-neutral", "every main switch of the place's board opens the neutral"),
-    ("solid-neutral", "a main switch of the place's board leaves the neutral closed"),
+    ),
     ("switched-rcd", "the RCD opens its neutral"),
     ("delayed", "the RCD is of type S"),
     ("not-delayed", "the RCD is not of type S"),
@@ -188,7 +195,10 @@ pub const TEXT_NAMES: &[Meaning] = &[
     ("earth", "earth / PE"),
     ("link", "the neutral-earth link in the site's words"),
     ("rcd-word", "safety switch (RCD) / RCD"),
-    ("conductor-name", "the fault's conductor in the site's words"),
+    (
+        "conductor-name",
+        "the fault's conductor in the site's words",
+    ),
     ("at-name", "the place as a person calls it"),
     ("to-name", "the other place as a person calls it"),
     ("board-name", "the place's board as a person calls it"),
@@ -263,17 +273,22 @@ pub const COMPUTED: &[Meaning] = &[
         "loop-disconnection",
         "most = share_of_volts × nominal volts / (factor of the breaker's curve × its rating)",
     ),
+    (
         "times-rated-residual",
         "least and most are multiples of the RCD's rated residual current",
+    ),
+    (
         "times-nominal-volts",
         "least and most are multiples of the nominal volts",
+    ),
+    (
+        "over-forecast",
+        "least and most are added to what the sound installation would read there",
+    ),
+    (
         "touch-over-residual",
         "most = touch volts in `most` / the rated residual current of the RCD ahead",
-    ("loop-disconnection", "most = share_of_volts × nominal volts / (factor of the breaker's curve × its rating)"),
-    ("times-rated-residual", "least and most are multiples of the RCD's rated residual current"),
-    ("times-nominal-volts", "least and most are multiples of the nominal volts"),
-    ("over-forecast", "least and most are added to what the sound installation would read there"),
-    ("touch-over-residual", "most = touch volts in `most` / the rated residual current of the RCD ahead"),
+    ),
 ];
 
 /// Words a reading may be (contract §3).

@@ -25,6 +25,15 @@ pub fn holds(word: &str, place: &Place, site: &Site, equipment: &[EquipmentRow])
         "has-link" => board(|b| b.earthing.as_ref().is_some_and(|e| e.link)),
         "no-link" => board(|b| !b.earthing.as_ref().is_some_and(|e| e.link)),
         "has-electrode" => board(|b| b.earthing.as_ref().is_some_and(|e| e.main_earth.is_some())),
+        "main-board" => place.spot == Spot::Board(site.main_board),
+        // These three are about boards among other places, which they let pass.
+        "unlinked" | "fed" | "fed-earth" if !matches!(place.spot, Spot::Board(_)) => true,
+        "unlinked" => board(|b| !b.earthing.as_ref().is_some_and(|e| e.link)),
+        "fed" => board(|b| matches!(b.feed, Feed::Submain { .. })),
+        "fed-earth" => board(|b| match &b.feed {
+            Feed::Submain { cable, .. } => cable.pe_mm2.is_some(),
+            Feed::Service => false,
+        }),
         "submain" => board(|b| matches!(b.feed, Feed::Submain { .. })),
         "has-pe" => board(|b| match &b.feed {
             Feed::Submain { cable, .. } => cable.pe_mm2.is_some(),
