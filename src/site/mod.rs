@@ -1,6 +1,7 @@
 //! The installation: what is there and how it hangs together (contract §1).
 
 pub mod condition;
+pub mod embedded;
 pub mod file;
 pub mod lookup;
 pub mod model;
@@ -13,6 +14,7 @@ pub mod terminals;
 pub mod words;
 
 pub use condition::holds;
+pub use embedded::{embedded, embedded_names};
 pub use file::{Known, LoadedFile, SiteError, SiteWarning, load_path, load_str, load_value};
 pub use lookup::lines_of;
 pub use model::*;
