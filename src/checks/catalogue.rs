@@ -4,8 +4,9 @@ use super::check::Check;
 use super::energised::energised;
 use super::expand::{Filler, Miss};
 use super::select::{Instance, instances};
-use crate::knowledge::{CheckForm, Knowledge};
-use crate::site::{Site, holds};
+use crate::knowledge::{CheckForm, Hookup, Knowledge};
+use crate::network::{Network, Unnamed};
+use crate::site::{Site, holds, places};
 
 /// A mistake of the knowledge files that a site brings out.
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
@@ -20,12 +21,54 @@ pub struct CheckError {
 /// All checks of a site, in order of knowledge and place. Instances of one check with the same setup
 /// and hookup are one.
 ///
-/// A check does not fit a place that has no RCD, circuit, … of which it speaks; it is left out there.
+/// A check does not fit a place that has no RCD, circuit, … of which it speaks, and is left out there.
+/// Nor does one whose terminals, devices or ends the circuit of the site does not have; [`misfits`]
+/// tells those.
 ///
 /// # Errors
 /// A selector, condition or name in braces that has no meaning.
-pub fn catalogue(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError> {
-    let mut out = Vec::new();
+pub fn catalogue(knowledge: &Knowledge, network: &Network, site: &Site) -> Result<Vec<Check>, CheckError> {
+    let mut out = expanded(knowledge, site)?;
+    out.retain(|check| misfit(check, network, site).is_none());
+    Ok(out)
+}
+
+/// The instances that [`catalogue`] leaves out although their selector and conditions let them through,
+/// each with what the circuit lacks: for whoever writes knowledge.
+///
+/// # Errors
+/// As [`catalogue`].
+pub fn misfits(knowledge: &Knowledge, network: &Network, site: &Site) -> Result<Vec<CheckError>, CheckError> {
+    let amiss = |check: &Check| {
+        misfit(check, network, site).map(|why| CheckError { check: check.test.clone(), why: format!("at {}: {why}", check.at) })
+    };
+    Ok(expanded(knowledge, site)?.iter().filter_map(amiss).collect())
+}
+
+fn misfit(check: &Check, network: &Network, site: &Site) -> Option<String> {
+    let circuit = &network.circuit;
+    if let Err(why) = circuit.switching(&check.setup, Unnamed::AsFound) {
+        return Some(why.to_string());
+    }
+    match &check.hookup {
+        Hookup::Seen { at, .. } => (!can_be_looked_at(at, site)).then(|| format!("there is no `{at}` to look at here")),
+        hookup => circuit.probe(hookup, &check.setup.on).err().map(|why| why.to_string()),
+    }
+}
+
+/// Whether a look has such a place (contract §3, `seen`).
+fn can_be_looked_at(at: &str, site: &Site) -> bool {
+    let place = ["service", "point", "circuit", "board", "bond", "electrode", "equipment"]
+        .iter()
+        .any(|class| places(site, class).iter().any(|place| place.id == at));
+    let earthing = |board: &str| site.board_index(board).and_then(|b| site.boards.get(b)?.earthing.as_ref());
+    place
+        || at.strip_suffix(".link").is_some_and(|board| earthing(board).is_some_and(|e| e.link))
+        || at.strip_suffix(".main-earth").is_some_and(|board| earthing(board).is_some_and(|e| e.main_earth.is_some()))
+}
+
+fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError> {
+    let mut out: Vec<Check> = Vec::new();
     for (row, form) in knowledge.checks.iter().enumerate() {
         let fail = |why: String| CheckError { check: form.id.clone(), why };
         let each = instances(&form.each, site, &knowledge.equipment)

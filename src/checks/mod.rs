@@ -9,7 +9,10 @@ mod expand;
 mod select;
 
 pub use available::{availability, whole_kit};
-pub use catalogue::{CheckError, catalogue};
+pub use catalogue::{CheckError, catalogue, misfits};
 pub use check::Check;
 pub use effort::{transition, walk};
-pub use energised::energised;
+pub use energised::{energised, supplied};
+
+#[cfg(test)]
+mod tests;

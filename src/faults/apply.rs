@@ -4,10 +4,11 @@ use std::collections::BTreeMap;
 
 use super::error::FaultError;
 use super::fault::Fault;
-use super::build::{Claim, build, claims, contradict};
+use super::build::{Claim, build, claims};
 use super::valid::checked;
 use crate::knowledge::{FaultKind, Knowledge, Manner, Prior};
 use crate::network::Edit;
+use crate::quantity::suggest::nearest;
 use crate::site::Site;
 
 /// The edits that a list of faults makes on a site.
@@ -17,7 +18,7 @@ use crate::site::Site;
 /// faults that contradict each other, a kind that does not change the circuit: see [`FaultError`].
 pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec<Edit>, FaultError> {
     let mut out = Vec::new();
-    let mut claimed: BTreeMap<String, (usize, Claim)> = BTreeMap::new();
+    let mut claimed: BTreeMap<String, usize> = BTreeMap::new();
     for (index, fault) in faults.iter().enumerate() {
         let kind = kind_of(knowledge, &fault.kind)?;
         let (place, to) = checked(kind, site, fault)?;
@@ -35,12 +36,12 @@ pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec
         for edit in build(kind, site, fault, &place, to.as_ref())? {
             for (branch, claim) in claims(&edit) {
                 match claimed.get(&branch) {
-                    Some(&(other, held)) if other != index && contradict(held, claim) => {
+                    Some(&other) if other != index && claim == Claim::Sole => {
                         return Err(conflict(other, &branch));
                     }
                     Some(_) => {}
                     None => {
-                        claimed.insert(branch, (index, claim));
+                        claimed.insert(branch, index);
                     }
                 }
             }
@@ -57,7 +58,7 @@ pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec
 pub fn kind_of<'a>(knowledge: &'a Knowledge, word: &str) -> Result<&'a FaultKind, FaultError> {
     knowledge.faults.iter().find(|k| k.kind == word).ok_or_else(|| FaultError::UnknownKind {
         kind: word.to_owned(),
-        near: near(word, knowledge.faults.iter().map(|k| k.kind.as_str())),
+        near: nearest(word, knowledge.faults.iter().map(|k| k.kind.as_str()), 3),
     })
 }
 
@@ -71,21 +72,6 @@ pub fn manner(kind: &FaultKind) -> Option<&Manner> {
     kind.manner.as_ref()
 }
 
-/// The value a fault has where it is not told: the median of its kind's prior, as clipped.
-pub fn median(prior: &Prior) -> f64 {
-    let clip = |x: f64, low: Option<f64>, high: Option<f64>| {
-        x.max(low.unwrap_or(f64::NEG_INFINITY)).min(high.unwrap_or(f64::INFINITY))
-    };
-    match *prior {
-        Prior::Fixed { value } => value,
-        Prior::Normal { mean, low, high, .. } => clip(mean, low, high),
-        Prior::Lognormal { median, low, high, .. } => clip(median, low, high),
-        Prior::Uniform { low, high } => 0.5 * (low + high),
-        Prior::Switch { p } => f64::from(u8::from(p >= 0.5)),
-        Prior::Either { p, ref lower, ref upper } => median(if p > 0.5 { lower } else { upper }),
-    }
-}
-
 /// A fault as `kind@at`.
 fn said(fault: &Fault) -> String {
     format!("`{}` at `{}`", fault.kind, fault.at)
@@ -94,12 +80,4 @@ fn said(fault: &Fault) -> String {
 /// The same kind at the same place twice, in the same conductor and to the same other place.
 fn same_thing(a: &Fault, b: &Fault) -> bool {
     a.kind == b.kind && a.at == b.at && a.conductor == b.conductor && a.to == b.to
-}
-
-/// Up to three valid words nearest to a wrong one.
-pub(crate) fn near<'a>(word: &str, valid: impl Iterator<Item = &'a str>) -> Vec<String> {
-    let mut scored: Vec<(usize, &str)> = valid.map(|v| (strsim::damerau_levenshtein(word, v), v)).collect();
-    scored.sort_unstable();
-    scored.dedup();
-    scored.into_iter().filter(|(d, v)| *d <= 2 + v.len() / 3).take(3).map(|(_, v)| v.to_owned()).collect()
 }

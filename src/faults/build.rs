@@ -1,11 +1,11 @@
 //! The edits of one fault, and what of the circuit each of them claims for itself.
 
-use super::apply::median;
 use super::error::FaultError;
 use super::fault::Fault;
 use super::valid::{conductor, filled};
 use crate::knowledge::{Amount, EditForm, FaultKind};
 use crate::network::Edit;
+use crate::network::params::median;
 use crate::site::{Place, Site};
 
 /// Volts and hertz at which a standing leakage or a neighbour's current is named (contract §5).
@@ -92,13 +92,9 @@ pub(crate) fn build(
 /// How an edit holds what it claims.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(crate) enum Claim {
-    /// The branch is gone.
-    Open,
-    /// Something stands in series with it.
-    Series,
-    /// It is something else than it was.
+    /// Alone: a branch, an end, a device's property is something else than it was.
     Sole,
-    /// A path beside others, which adds up.
+    /// Beside others: paths that add up.
     Beside,
 }
 
@@ -106,10 +102,7 @@ pub(crate) enum Claim {
 pub(crate) fn claims(edit: &Edit) -> Vec<(String, Claim)> {
     let one = |key: String, claim| vec![(key, claim)];
     match edit {
-        Edit::Series { branch, ohms } => {
-            one(same_branch(branch), if ohms.is_infinite() { Claim::Open } else { Claim::Series })
-        }
-        Edit::Replace { branch, .. } => one(same_branch(branch), Claim::Sole),
+        Edit::Series { branch, .. } | Edit::Replace { branch, .. } => one(same_branch(branch), Claim::Sole),
         Edit::Shunt { between, .. } | Edit::Capacitor { between, .. } => {
             let mut ends = between.clone();
             ends.sort();
@@ -129,12 +122,6 @@ pub(crate) fn claims(edit: &Edit) -> Vec<(String, Claim)> {
             vec![(format!("{rcd} trip current"), Claim::Sole), (format!("{rcd} trip time"), Claim::Sole)]
         }
     }
-}
-
-/// Whether two claims by different faults cannot both be.
-pub(crate) fn contradict(a: Claim, b: Claim) -> bool {
-    use Claim::{Beside, Series, Sole};
-    !matches!((a, b), (Beside, Beside) | (Series, Series) | (Series, Sole) | (Sole, Series))
 }
 
 /// A circuit's or submain's end by one name: what reaches a circuit's `c1.N` is `c1.N@board`.

@@ -15,3 +15,6 @@ pub use enumerate::{Hypothesis, NOTHING_WRONG, Space, UNLISTED, enumerate};
 pub use error::FaultError;
 pub use fault::Fault;
 pub use pairs::{PairList, best_first};
+
+#[cfg(test)]
+mod tests;

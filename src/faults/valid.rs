@@ -1,9 +1,9 @@
 //! Whether a fault fits its kind's row and this site: place, other place, conductor, value, position.
 
-use super::apply::near;
 use super::error::FaultError;
 use super::fault::Fault;
 use crate::knowledge::{FaultKind, fill, words};
+use crate::quantity::suggest::nearest;
 use crate::site::{Phase, Place, Site, place};
 
 /// The place of a fault and the terminal or point of its `to`, both checked.
@@ -72,7 +72,7 @@ fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<P
             kind: kind.kind.clone(),
             place: id.to_owned(),
             why: format!("that is no {} of this site", classes.join(" or ")),
-            near: near(id, fit.iter().map(|p| p.id.as_str())),
+            near: nearest(id, fit.iter().map(|p| p.id.as_str()), 3),
         }
     })
 }
