@@ -74,7 +74,7 @@ fn selectors_choose_their_places() {
     assert_eq!(of("last-point", "{at}"), ["c1.p3", "c2.p1", "c3.p1", "s1.p1"]);
     assert_eq!(of("split", "{at}"), ["c1.p1"], "9 of 20 m is nearest the middle");
     assert_eq!(of("circuit-on-rcd", "{at}"), ["c1", "c2"]);
-    assert_eq!(of("circuit-pair", "{b}"), ["c1+c2", "c1+c3", "c2+c3"]);
+    assert_eq!(of("circuit-pair", "{b}"), ["c1+c2", "c1+c3"], "the same look at c3 from c2 is one");
     assert_eq!(of("plug-equipment", "{at}"), ["kettle"]);
     assert_eq!(of("electrode", "{at}"), ["electrode", "shed.electrode"]);
     assert_eq!(of("main-line", "{at}"), Vec::<String>::new());
@@ -117,6 +117,8 @@ fn three_lines_are_joined_or_the_first_is_meant() {
     let volts = made(&s, "id = \"x\"\neach = \"point\"\nhookup = { quantity = \"volts\", between = [\"{at}.L\", \"{at}.N\"] }");
     let Hookup::Volts { between, .. } = &volts.iter().find(|c| c.at == "c3.p1").unwrap().hookup else { panic!() };
     assert_eq!(between[0], "c3.p1.L1");
+    let pairs = made(&s, "id = \"x\"\neach = \"circuit-pair\"\nhookup = { quantity = \"continuity\", between = [\"{a}.N\", \"{b}.N\"] }");
+    assert_eq!(ats(&pairs), ["c1+c2", "c1+c3", "c2+c3"]);
     let lines = made(&s, "id = \"x\"\neach = \"main-line\"\nhookup = { quantity = \"volts\", between = [\"{at}.{conductor}\", \"{at}.N\"] }");
     assert_eq!(ats(&lines), ["msb.L1", "msb.L2", "msb.L3"]);
 }
