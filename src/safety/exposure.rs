@@ -1,8 +1,9 @@
 //! What a check does to the circuit while it is made: the states it passes, and the current its instrument drives.
 
 use super::Ground;
-use super::hold::{isolates, isolation, state_key};
+use super::hold::{isolates, isolation};
 use super::places::{conductors_at, place_of};
+use super::point::state_key;
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Meter, Setup, UnplugSet, procedure::MeterWord};
 use crate::network::Edit;

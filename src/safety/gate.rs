@@ -2,7 +2,8 @@
 
 use super::Ground;
 use super::hazard::{Assessment, Hazards};
-use super::hold::{HoldPoint, Stage, hold_points, isolation, make_safe, marked, state_key};
+use super::hold::{hold_points, isolation, make_safe};
+use super::point::{HoldPoint, Stage, marked, state_key};
 use super::rules::{self, Refusal, quiet_check, quiet_proof};
 use super::state::State;
 use crate::checks::Check;

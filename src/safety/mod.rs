@@ -11,16 +11,21 @@ mod hazard;
 mod hold;
 mod makesafe;
 pub mod places;
+mod point;
+mod proof;
 mod rules;
 mod state;
 mod wants;
 mod words;
 
+#[cfg(test)]
+mod tests;
+
 
 pub use body::{Body, BodyError, Touch};
 pub use gate::{Cleared, Gate, ReadingStop, Verdict};
 pub use hazard::{Assessment, HazardBook, Hazards, Raised, Simulator, World};
-pub use hold::{HoldPoint, Stage, Want};
+pub use point::{HoldPoint, Stage, Want};
 pub use makesafe::{Warning, is_standing, warnings};
 pub use rules::Refusal;
 pub use state::{DeadProof, NotDead, State, StateEvent};

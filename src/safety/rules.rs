@@ -5,7 +5,8 @@ use super::hold::{is_dead_everywhere, isolates, isolation};
 use super::places::{
     board_of_end, conductor_of, is_line, is_off, mains_of, place_of, place_of_end, source_is_off, terminals_of,
 };
-use super::state::{State, is_stake_check};
+use super::proof::is_stake_check;
+use super::state::State;
 use super::words::{list, words};
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Meter, Provoke, Setup, SourceMode, UnplugSet, procedure::MeterWord};

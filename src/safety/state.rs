@@ -3,8 +3,9 @@
 use std::collections::{BTreeMap, BTreeSet};
 
 use super::Ground;
-use super::hold::{HoldPoint, Stage, state_key};
 use super::places::{parts_neutral, place_of_end};
+use super::point::{HoldPoint, Stage, state_key};
+use super::proof::{Gained, gives, stake_reading};
 use super::rules::proves_quiet;
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Proof, Setup, SourceMode};
@@ -92,13 +93,6 @@ pub enum StateEvent<'a> {
     Retracted(u64),
 }
 
-/// A condition shown by a reading.
-#[derive(Clone, Debug, PartialEq)]
-struct Gained {
-    entry: u64,
-    places: Vec<String>,
-}
-
 /// A hold point that was done.
 #[derive(Clone, Debug, PartialEq)]
 struct Done {
@@ -117,6 +111,20 @@ pub struct StakeVolts {
     pub entry: u64,
 }
 
+/// How far the tester's two proofs enclose the proof of dead.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+enum Tester {
+    /// Not proved in this state.
+    #[default]
+    Unproved,
+    /// Proved before.
+    Before,
+    /// Proved before, and dead proved since.
+    Used,
+    /// Proved before and after.
+    Bracketed,
+}
+
 /// The state of the visit, as far as safety goes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct State {
@@ -130,7 +138,7 @@ pub struct State {
     standing: bool,
     network_attended: bool,
     stake: Option<StakeVolts>,
-    bracketed: bool,
+    tester: Tester,
     order: u64,
 }
 
@@ -218,9 +226,9 @@ impl State {
         gives_back(&self.setup, to)
     }
 
-    /// Whether the tester was proved again after the last proof of dead.
+    /// Whether the tester was proved before and after what is proved dead.
     pub(super) fn is_bracketed(&self) -> bool {
-        self.bracketed
+        self.tester == Tester::Bracketed
     }
 
     /// Judges the readings of a point: the first one over its limit, or missing (as infinite volts).
@@ -268,6 +276,7 @@ impl State {
     fn arrange(&mut self, site: &Site, to: &Setup) {
         if gives_back(&self.setup, to) {
             self.dead.clear();
+            self.tester = Tester::Unproved;
             self.done.retain(|_, d| d.stage.outlives_state());
             self.proofs.retain(|what, _| !what.starts_with("no current in "));
         } else if to.lift.iter().any(|end| parts_neutral(end) && !self.setup.lift.contains(end)) {
@@ -306,11 +315,14 @@ impl State {
             let read = volts.get(&want.name).copied().unwrap_or(f64::INFINITY);
             self.dead.retain(|p| (&p.at, &p.against) != (&at, &against));
             self.dead.push(DeadProof { at, against, volts: read, entry });
-            self.bracketed = false;
         }
-        if matches!(point.stage, Stage::TesterAfter | Stage::TesterAfterAgain) {
-            self.bracketed = true;
-        }
+        self.tester = match (point.stage, self.tester) {
+            (Stage::TesterBefore, _) => Tester::Before,
+            (Stage::ProveDead | Stage::ProveDeadAgain, Tester::Unproved) => Tester::Unproved,
+            (Stage::ProveDead | Stage::ProveDeadAgain, _) if !point.wants.is_empty() => Tester::Used,
+            (Stage::TesterAfter | Stage::TesterAfterAgain, Tester::Used) => Tester::Bracketed,
+            (_, same) => same,
+        };
         self.cannot.remove(&point.point);
         let done = Done { entry, order: self.order, stage: point.stage, key: point.key.clone() };
         self.done.insert(point.point.clone(), done);
@@ -354,6 +366,7 @@ impl State {
 
     fn resumed(&mut self) {
         self.dead.clear();
+        self.tester = Tester::Unproved;
         self.done.retain(|_, d| d.stage == Stage::MakeSafe);
         // What holds for the whole site hangs on a supply that may have changed meanwhile.
         self.proofs.retain(|what, gained| !gained.is_site_wide(what));
@@ -388,23 +401,6 @@ impl State {
     }
 }
 
-impl Gained {
-    /// No place in its words: it holds for the whole site.
-    fn is_site_wide(&self, what: &str) -> bool {
-        !self.places.iter().any(|place| !place.is_empty() && what.split(' ').any(|word| overlaps(word, place)))
-    }
-
-    fn sits_at(&self, what: &str, place: &str) -> bool {
-        what.split(' ').any(|word| overlaps(word, place)) || self.places.iter().any(|own| overlaps(own, place))
-    }
-}
-
-/// Whether two places are one, or one lies within the other.
-fn overlaps(a: &str, b: &str) -> bool {
-    let within = |inner: &str, outer: &str| inner.strip_prefix(outer).is_some_and(|rest| rest.starts_with('.'));
-    a == b || within(a, b) || within(b, a)
-}
-
 /// The place whose proofs fall when an end is lifted or landed: a cut cable touches its whole circuit.
 fn touched_by(site: &Site, end: &str) -> String {
     let place = place_of_end(site, end);
@@ -419,48 +415,4 @@ fn gives_back(from: &Setup, to: &Setup) -> bool {
     from.open.iter().any(|device| !to.open.contains(device))
         || from.lift.iter().any(|end| !to.lift.contains(end))
         || to.sources.iter().any(|(id, mode)| *mode != SourceMode::Off && from.sources.get(id) == Some(&SourceMode::Off))
-}
-
-/// Whether a reading gives a proof: all of it on the right side, a bound only where the bound says so.
-fn gives(proof: &Proof, value: &ParsedValue) -> bool {
-    let (low, high) = match value {
-        ParsedValue::Value { value } => (*value, *value),
-        ParsedValue::Range { low, high } => (*low, *high),
-        ParsedValue::Over { over } => (*over, f64::INFINITY),
-        ParsedValue::Under { under } => (f64::NEG_INFINITY, *under),
-        ParsedValue::Word { word } => {
-            let infinite = *word == Word::Open;
-            let named = proof.word.as_deref().is_none_or(|wanted| says(*word, wanted));
-            return if proof.word.is_some() { named } else { infinite && proof.most.is_none() && proof.least.is_some() };
-        }
-    };
-    proof.word.is_none() && proof.least.is_none_or(|least| low >= least) && proof.most.is_none_or(|most| high <= most)
-}
-
-/// Whether a word is written so.
-fn says(word: Word, wanted: &str) -> bool {
-    serde_json::to_value(word).is_ok_and(|v| v.as_str() == Some(wanted))
-}
-
-/// The volts of a reading from the main earth bar to a stake, nothing lifted; else nothing.
-fn stake_reading(site: &Site, check: &Check, value: &ParsedValue) -> Option<f64> {
-    if !is_stake_check(site, check) {
-        return None;
-    }
-    match value {
-        ParsedValue::Value { value } => Some(value.abs()),
-        ParsedValue::Range { low, high } => Some(low.abs().max(high.abs())),
-        ParsedValue::Over { .. } => Some(f64::INFINITY),
-        ParsedValue::Under { under } => Some(under.abs()),
-        ParsedValue::Word { .. } => None,
-    }
-}
-
-/// Whether a check reads volts from the main earth bar to an independent stake with everything as found.
-pub(super) fn is_stake_check(site: &Site, check: &Check) -> bool {
-    let Hookup::Volts { between, .. } = &check.hookup else { return false };
-    let bar = site.boards.get(site.main_board).map(|b| format!("{}.PE", b.id));
-    let pair = between.contains(&"soil".to_owned()) && bar.is_some_and(|bar| between.contains(&bar));
-    let as_found = Setup { closed: check.setup.closed.clone(), ..Setup::default() };
-    pair && check.setup == as_found
 }

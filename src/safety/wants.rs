@@ -1,9 +1,9 @@
 //! Which voltages prove a place dead: every pair of its conductors, and each to an independent stake.
 
-use super::hold::Want;
 use super::places::{
     Conductors, conductor_of, conductors_at, neutral_bar, parts_neutral, place_of, place_of_end, terminals_of,
 };
+use super::point::Want;
 use super::words::letter;
 use super::Ground;
 use crate::checks::Check;
