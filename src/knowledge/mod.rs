@@ -1,5 +1,6 @@
 //! What the trade knows, as data: fault kinds, checks, equipment, symptoms, limits, instruments.
 
+mod braces;
 mod diagnose;
 mod issue;
 mod library;
@@ -8,6 +9,9 @@ pub mod procedure;
 pub mod records;
 mod source;
 pub mod template;
+mod validate;
+mod validate_checks;
+mod validate_faults;
 pub mod words;
 
 pub use issue::{Issue, KnowledgeError};
