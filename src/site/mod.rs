@@ -11,6 +11,7 @@ pub mod place;
 pub mod samples;
 pub mod spot;
 pub mod terminals;
+pub mod topology;
 pub mod words;
 
 pub use condition::holds;
@@ -22,4 +23,5 @@ pub use names::name_of;
 pub use place::{Place, circuit_pairs, places};
 pub use spot::{Spot, spots};
 pub use terminals::{devices, ends, terminals};
+pub use topology::{Joint, Topology};
 pub use words::{Words, words};
