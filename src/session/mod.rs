@@ -6,8 +6,10 @@ pub mod command;
 pub mod engine;
 mod error;
 pub mod event;
+pub mod limits;
 pub mod log;
 pub mod predict;
+pub mod rechecks;
 pub mod view;
 pub mod vocabulary;
 
