@@ -38,18 +38,35 @@ impl Engine {
     ///
     /// # Errors
     /// `bad-site` with the path; `unknown-word` for the kit; `internal` for mistakes of knowledge.
-    pub fn new(knowledge: Arc<Knowledge>, site: &Value, kit: &[String]) -> Result<Self, SessionError> {
-        let known = Known::new(&knowledge.equipment, knowledge.rules.iter().map(|rule| rule.id.as_str()));
+    pub fn new(
+        knowledge: Arc<Knowledge>,
+        site: &Value,
+        kit: &[String],
+    ) -> Result<Self, SessionError> {
+        let known = Known::new(
+            &knowledge.equipment,
+            knowledge.rules.iter().map(|rule| rule.id.as_str()),
+        );
         let (site, notes) = load_value(site.clone(), &known).map_err(SessionError::from)?;
         for word in kit {
             if knowledge.kit(word).is_none() {
                 let all = knowledge.kit.iter().map(|row| row.kind.as_str());
-                return Err(SessionError::unknown(ErrorCode::UnknownWord, "instrument", word, all));
+                return Err(SessionError::unknown(
+                    ErrorCode::UnknownWord,
+                    "instrument",
+                    word,
+                    all,
+                ));
             }
         }
         let network = Network::new(&site, &knowledge)?;
-        let checks = catalogue(&knowledge, &site)
-            .map_err(|e| SessionError::new(ErrorCode::Internal, e.to_string(), "mend the knowledge files"))?;
+        let checks = catalogue(&knowledge, &site).map_err(|e| {
+            SessionError::new(
+                ErrorCode::Internal,
+                e.to_string(),
+                "mend the knowledge files",
+            )
+        })?;
         let rows = checks
             .iter()
             .enumerate()
@@ -57,7 +74,10 @@ impl Engine {
             .collect();
         let warnings = notes
             .iter()
-            .map(|note| Warning { code: "site".to_owned(), text: note.to_string() })
+            .map(|note| Warning {
+                code: "site".to_owned(),
+                text: note.to_string(),
+            })
             .collect();
         Ok(Self {
             knowledge,
@@ -83,13 +103,27 @@ impl Engine {
         if let Some(check) = self.row(test, at).and_then(|row| self.checks.get(row)) {
             return Ok(check);
         }
-        let places: Vec<&str> = self.checks.iter().filter(|c| c.test == test).map(|c| c.at.as_str()).collect();
+        let places: Vec<&str> = self
+            .checks
+            .iter()
+            .filter(|c| c.test == test)
+            .map(|c| c.at.as_str())
+            .collect();
         if places.is_empty() {
             let tests: BTreeSet<&str> = self.checks.iter().map(|c| c.test.as_str()).collect();
-            return Err(SessionError::unknown(ErrorCode::UnknownTest, "test", test, tests));
+            return Err(SessionError::unknown(
+                ErrorCode::UnknownTest,
+                "test",
+                test,
+                tests,
+            ));
         }
         let near = nearest(at, &places, 3);
-        let shown = if near.is_empty() { places.iter().take(6).map(|p| (*p).to_owned()).collect() } else { near };
+        let shown = if near.is_empty() {
+            places.iter().take(6).map(|p| (*p).to_owned()).collect()
+        } else {
+            near
+        };
         Err(SessionError::new(
             ErrorCode::UnknownTest,
             format!("the test `{test}` is not made at `{at}`"),
@@ -114,13 +148,22 @@ impl Engine {
     /// What a hookup asks to be read.
     pub fn asked(&self, hookup: &Hookup, unit: &str) -> Asked {
         let over = self.knowledge.error_of(hookup).map(|row| row.over);
-        let low_z = matches!(hookup, Hookup::Volts { meter: Some(Meter::Named(MeterWord::LowZ)), .. });
+        let low_z = matches!(
+            hookup,
+            Hookup::Volts {
+                meter: Some(Meter::Named(MeterWord::LowZ)),
+                ..
+            }
+        );
         Asked::new(hookup.quantity(), unit, low_z, over)
     }
 
     /// The key of a test at a place.
     pub fn key(check: &Check) -> TestAt {
-        TestAt { test: check.test.clone(), at: check.at.clone() }
+        TestAt {
+            test: check.test.clone(),
+            at: check.at.clone(),
+        }
     }
 }
 
@@ -154,11 +197,18 @@ impl From<NetworkError> for SessionError {
     fn from(error: NetworkError) -> Self {
         let message = error.to_string();
         match error {
-            NetworkError::UnknownPlace { nearest, .. } => {
-                Self::new(ErrorCode::UnknownPlace, message, "name a place that this site has").with("nearest", nearest)
+            NetworkError::UnknownPlace { nearest, .. } => Self::new(
+                ErrorCode::UnknownPlace,
+                message,
+                "name a place that this site has",
+            )
+            .with("nearest", nearest),
+            NetworkError::Conflict { .. } => {
+                Self::new(ErrorCode::Conflict, message, "leave one of them out")
             }
-            NetworkError::Conflict { .. } => Self::new(ErrorCode::Conflict, message, "leave one of them out"),
-            NetworkError::Bad(_) => Self::new(ErrorCode::BadRequest, message, "ask for what this site has"),
+            NetworkError::Bad(_) => {
+                Self::new(ErrorCode::BadRequest, message, "ask for what this site has")
+            }
         }
     }
 }

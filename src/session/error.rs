@@ -91,7 +91,10 @@ impl ErrorCode {
 
     /// The code of a word of the contract; [`Self::Internal`] for any other.
     pub fn of(word: &str) -> Self {
-        Self::ALL.into_iter().find(|code| code.as_str() == word).unwrap_or(Self::Internal)
+        Self::ALL
+            .into_iter()
+            .find(|code| code.as_str() == word)
+            .unwrap_or(Self::Internal)
     }
 
     /// The word of the contract.

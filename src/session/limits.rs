@@ -10,8 +10,17 @@ use crate::quantity::{Parsed, ParsedValue, Word};
 use crate::site::{Curve, Feed, Place, holds, place};
 
 /// Classes of places that a test can be at.
-const CLASSES: [&str; 9] =
-    ["point", "circuit", "rcd", "board", "equipment", "bond", "electrode", "source", "service"];
+const CLASSES: [&str; 9] = [
+    "point",
+    "circuit",
+    "rcd",
+    "board",
+    "equipment",
+    "bond",
+    "electrode",
+    "source",
+    "service",
+];
 
 /// A limit as it holds at one place.
 #[derive(Clone, Debug, PartialEq)]
@@ -72,7 +81,9 @@ pub fn limits(engine: &Engine, check: &Check) -> Vec<Limit> {
         None => true,
     };
     let fits = |row: &&LimitRow| {
-        let holds = |word: &String| holds(word, &place, &engine.site, &engine.knowledge.equipment) == Some(true);
+        let holds = |word: &String| {
+            holds(word, &place, &engine.site, &engine.knowledge.equipment) == Some(true)
+        };
         row.only.iter().all(holds)
     };
     check
@@ -88,7 +99,12 @@ pub fn limits(engine: &Engine, check: &Check) -> Vec<Limit> {
 /// A row with its numbers worked out; `None` where the place lacks what they follow from.
 fn at_place(engine: &Engine, place: &Place, row: &LimitRow) -> Option<Limit> {
     let site = &engine.site;
-    let residual = || place.rcd(site).and_then(|(_, id)| site.rcd(id)).map(|rcd| rcd.amps);
+    let residual = || {
+        place
+            .rcd(site)
+            .and_then(|(_, id)| site.rcd(id))
+            .map(|rcd| rcd.amps)
+    };
     let (least, most) = match row.computed.as_deref() {
         None => (row.least, row.most),
         Some("loop-disconnection") => {
@@ -135,9 +151,21 @@ fn at_place(engine: &Engine, place: &Place, row: &LimitRow) -> Option<Limit> {
 
 /// Judges a reading by its limits; `rules_named`: the site names its rule set.
 pub fn judge(limits: &[Limit], rules_named: bool, parsed: &Parsed) -> Judged {
-    let general = limits.iter().filter(|limit| rules_named || !limit.named).map(|limit| one(limit, parsed)).max();
-    let widest = limits.iter().filter(|limit| !rules_named && limit.named).map(|limit| one(limit, parsed)).min();
-    general.into_iter().chain(widest).max().unwrap_or(Judged::CheckYourStandard)
+    let general = limits
+        .iter()
+        .filter(|limit| rules_named || !limit.named)
+        .map(|limit| one(limit, parsed))
+        .max();
+    let widest = limits
+        .iter()
+        .filter(|limit| !rules_named && limit.named)
+        .map(|limit| one(limit, parsed))
+        .min();
+    general
+        .into_iter()
+        .chain(widest)
+        .max()
+        .unwrap_or(Judged::CheckYourStandard)
 }
 
 fn one(limit: &Limit, parsed: &Parsed) -> Judged {
@@ -184,35 +212,72 @@ mod tests {
     use crate::quantity::Unit;
 
     fn limit(least: Option<f64>, most: Option<f64>, marker: Marker, named: bool) -> Limit {
-        Limit { least, most, word: None, named, text: String::new(), source: String::new(), marker }
+        Limit {
+            least,
+            most,
+            word: None,
+            named,
+            text: String::new(),
+            source: String::new(),
+            marker,
+        }
     }
 
     fn reads(value: ParsedValue) -> Parsed {
-        Parsed { value, unit: Unit::Ohm, rough: false }
+        Parsed {
+            value,
+            unit: Unit::Ohm,
+            rough: false,
+        }
     }
 
     #[test]
     fn a_remembered_limit_decides_nothing() {
         let low = reads(ParsedValue::Value { value: 0.4e6 });
-        assert_eq!(judge(&[limit(Some(1e6), None, Marker::Seen, false)], true, &low), Judged::Outside);
-        assert_eq!(judge(&[limit(Some(1e6), None, Marker::Memory, false)], true, &low), Judged::CheckYourStandard);
+        assert_eq!(
+            judge(&[limit(Some(1e6), None, Marker::Seen, false)], true, &low),
+            Judged::Outside
+        );
+        assert_eq!(
+            judge(&[limit(Some(1e6), None, Marker::Memory, false)], true, &low),
+            Judged::CheckYourStandard
+        );
         assert_eq!(judge(&[], true, &low), Judged::CheckYourStandard);
     }
 
     #[test]
     fn over_range_is_above_a_least_and_nothing_else() {
         let over = reads(ParsedValue::Over { over: 200e6 });
-        assert_eq!(judge(&[limit(Some(1e6), None, Marker::Seen, false)], true, &over), Judged::Within);
-        assert_eq!(judge(&[limit(None, Some(1.0), Marker::Seen, false)], true, &over), Judged::Outside);
+        assert_eq!(
+            judge(&[limit(Some(1e6), None, Marker::Seen, false)], true, &over),
+            Judged::Within
+        );
+        assert_eq!(
+            judge(&[limit(None, Some(1.0), Marker::Seen, false)], true, &over),
+            Judged::Outside
+        );
         let under = reads(ParsedValue::Under { under: 0.05 });
-        assert_eq!(judge(&[limit(None, Some(0.03), Marker::Seen, false)], true, &under), Judged::CheckYourStandard);
+        assert_eq!(
+            judge(
+                &[limit(None, Some(0.03), Marker::Seen, false)],
+                true,
+                &under
+            ),
+            Judged::CheckYourStandard
+        );
         let open = reads(ParsedValue::Word { word: Word::Open });
-        assert_eq!(judge(&[limit(None, Some(1.0), Marker::Seen, false)], true, &open), Judged::Outside);
+        assert_eq!(
+            judge(&[limit(None, Some(1.0), Marker::Seen, false)], true, &open),
+            Judged::Outside
+        );
     }
 
     #[test]
     fn without_a_rule_set_the_widest_counts() {
-        let rows = [limit(None, Some(0.3), Marker::Seen, true), limit(None, Some(0.5), Marker::Seen, true)];
+        let rows = [
+            limit(None, Some(0.3), Marker::Seen, true),
+            limit(None, Some(0.5), Marker::Seen, true),
+        ];
         let reading = reads(ParsedValue::Value { value: 0.4 });
         assert_eq!(judge(&rows, false, &reading), Judged::Within);
         assert_eq!(judge(&rows[..1], true, &reading), Judged::Outside);

@@ -34,11 +34,19 @@ fn shown(prediction: Prediction) -> Result<PredictAnswer, SessionError> {
         Outcome::Number(number) if number.is_infinite() => json!(Word::Open.text()),
         Outcome::Number(_) => {
             let hint = "one of the numbers given is beyond what the circuit can be solved with";
-            return Err(SessionError::new(ErrorCode::Internal, "the circuit has no solution", hint));
+            return Err(SessionError::new(
+                ErrorCode::Internal,
+                "the circuit has no solution",
+                hint,
+            ));
         }
         Outcome::Word(word) => json!(word.text()),
     };
-    Ok(PredictAnswer { value, unit: prediction.unit, tripped: prediction.tripped })
+    Ok(PredictAnswer {
+        value,
+        unit: prediction.unit,
+        tripped: prediction.tripped,
+    })
 }
 
 impl Engine {
@@ -47,13 +55,24 @@ impl Engine {
     /// # Errors
     /// `unknown-word`, `unknown-place`, `conflict`, `not-predictable`, `bad-request`.
     pub fn predict(&self, ask: &command::Predict) -> Result<PredictAnswer, SessionError> {
-        if let Some(path) = ask.parameters.iter().find(|(path, value)| value.is_none() && *path != MAY_BE_NULL) {
+        if let Some(path) = ask
+            .parameters
+            .iter()
+            .find(|(path, value)| value.is_none() && *path != MAY_BE_NULL)
+        {
             let hint = "give a number, or leave it out for its usual value";
-            return Err(SessionError::new(ErrorCode::BadRequest, format!("`parameters.{}` is null", path.0), hint));
+            return Err(SessionError::new(
+                ErrorCode::BadRequest,
+                format!("`parameters.{}` is null", path.0),
+                hint,
+            ));
         }
         let edits = edits(&self.knowledge, &self.site, &ask.faults)?;
         let setup = ask.setup.clone().unwrap_or_default();
         let protection = ask.protection.unwrap_or(false);
-        shown(self.network.predict(&edits, &setup, &ask.hookup, &ask.parameters, protection)?)
+        shown(
+            self.network
+                .predict(&edits, &setup, &ask.hookup, &ask.parameters, protection)?,
+        )
     }
 }

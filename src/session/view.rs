@@ -8,15 +8,9 @@ use super::event::TestAt;
 use crate::faults::Fault;
 use crate::knowledge::{Hookup, Setup};
 use crate::quantity::Parsed;
+use crate::safety::HoldPoint;
 
-/// A thing to do or tell at once, or worth knowing.
-#[derive(Clone, Debug, PartialEq, Eq, Serialize)]
-pub struct Warning {
-    /// Code of contract §6, or `site`, `log`, `kit` when it is about what was read.
-    pub code: String,
-    /// What to do.
-    pub text: String,
-}
+pub use crate::safety::Warning;
 
 /// A hypothesis in the ranking.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -87,35 +81,6 @@ pub struct VerdictView {
     pub could_also_be: Vec<CouldBe>,
 }
 
-/// A voltage that a hold point wants to be told.
-#[derive(Clone, Debug, PartialEq, Serialize)]
-pub struct WantView {
-    /// Its name in `readings`.
-    pub name: String,
-    /// Two terminals.
-    pub between: [String; 2],
-    /// At or below this the conductors count as dead, V.
-    pub limit_volts: f64,
-}
-
-/// A hold point of a test.
-#[derive(Clone, Debug, PartialEq, Serialize)]
-pub struct PointView {
-    /// Its id.
-    pub point: String,
-    /// What is to be done and seen.
-    pub text: String,
-    /// State in which it is done.
-    pub setup: Setup,
-    /// Readings it wants.
-    pub wants: Vec<WantView>,
-    /// Whether it is done.
-    pub done: bool,
-    /// It is done by this test's reading and nothing else.
-    #[serde(flatten, skip_serializing_if = "Option::is_none")]
-    pub by_test: Option<TestAt>,
-}
-
 /// A test at a place.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct TestView {
@@ -178,7 +143,7 @@ pub struct AdviceView {
     /// The same per minute.
     pub bits_per_minute: f64,
     /// What must be done first.
-    pub hold_points: Vec<PointView>,
+    pub hold_points: Vec<HoldPoint>,
     /// What may bite.
     pub hazard: Option<String>,
     /// What the leading hypotheses would read.
@@ -194,7 +159,7 @@ pub struct CheckOwed {
     #[serde(flatten)]
     pub test: TestView,
     /// What must be done first.
-    pub hold_points: Vec<PointView>,
+    pub hold_points: Vec<HoldPoint>,
     /// What may bite.
     pub hazard: Option<String>,
     /// What is acceptable, as text; null where knowledge has none.
@@ -274,12 +239,12 @@ pub struct PointAnswer {
     /// Line of the log.
     pub entry: u64,
     /// Points of the same test that are still open.
-    pub open_points: Vec<PointView>,
+    pub open_points: Vec<HoldPoint>,
     /// What to do now instead of another test.
     pub verdict: Option<VerdictView>,
 }
 
-/// Answer to `cannot`, `note`, `close`.
+/// Answer to `note`, `close`.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct EntryAnswer {
     /// Line of the log.
