@@ -60,7 +60,7 @@ impl Engine {
             }
         }
         let network = Network::new(&site, &knowledge)?;
-        let checks = catalogue(&knowledge, &site).map_err(|e| {
+        let checks = catalogue(&knowledge, &network, &site).map_err(|e| {
             SessionError::new(
                 ErrorCode::Internal,
                 e.to_string(),
