@@ -4,7 +4,7 @@ use super::check::Check;
 use super::energised::energised;
 use super::expand::{Filler, Miss};
 use super::select::{Instance, instances};
-use crate::knowledge::{CheckForm, Hookup, Knowledge};
+use crate::knowledge::{CheckForm, Hookup, Knowledge, Setup, SourceMode};
 use crate::network::{Network, Unnamed};
 use crate::site::{Site, holds, places};
 
@@ -100,8 +100,8 @@ fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError
 
 fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Result<Check, Miss> {
     let filler = Filler { site, instance };
-    let setup = filler.setup(&form.setup)?;
     let hookup = filler.hookup(&form.hookup)?;
+    let setup = sources_off(filler.setup(&form.setup)?, &hookup, site);
     Ok(Check {
         test: form.id.clone(),
         at: instance.at.clone(),
@@ -123,6 +123,17 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
         staged: form.staged,
         place: stand(instance, site),
     })
+}
+
+/// Dead readings, and whatever lifts an end, are made with everything off that could feed back.
+fn sources_off(mut setup: Setup, hookup: &Hookup, site: &Site) -> Setup {
+    let dead = matches!(hookup, Hookup::Insulation { .. } | Hookup::Continuity { .. });
+    if dead || !setup.lift.is_empty() {
+        for source in &site.sources {
+            setup.sources.entry(source.id.clone()).or_insert(SourceMode::Off);
+        }
+    }
+    setup
 }
 
 /// Where the person stands: the point, or the board, or the bond or electrode itself.

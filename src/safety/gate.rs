@@ -48,7 +48,7 @@ impl<T> Cleared<T> {
 #[derive(Clone, Debug, PartialEq)]
 pub enum Verdict {
     /// It may be advised; its open hold points come first.
-    Cleared(Cleared<Check>),
+    Cleared(Box<Cleared<Check>>),
     /// A hold point of it cannot be done.
     Held {
         /// Those points.
@@ -64,7 +64,7 @@ impl Verdict {
     /// The cleared check, if it is.
     pub fn cleared(self) -> Option<Cleared<Check>> {
         match self {
-            Self::Cleared(cleared) => Some(cleared),
+            Self::Cleared(cleared) => Some(*cleared),
             Self::Held { .. } | Self::Refused(_) => None,
         }
     }
@@ -120,7 +120,7 @@ impl<'a> Gate<'a> {
             return Verdict::Held { points: stuck, why };
         }
         let hazard = self.hazard_text(check, &assessment);
-        Verdict::Cleared(Cleared { inner: check.clone(), points, hazard })
+        Verdict::Cleared(Box::new(Cleared { inner: check.clone(), points, hazard }))
     }
 
     /// Whether a reading of the check may be taken in now: cleared anew, every hold point done.
@@ -138,7 +138,7 @@ impl<'a> Gate<'a> {
             Verdict::Held { why, .. } => Err(ReadingStop::Held(why)),
             Verdict::Cleared(cleared) => {
                 let open: Vec<HoldPoint> = cleared.open_points().cloned().collect();
-                if open.is_empty() { Ok(cleared) } else { Err(ReadingStop::Open(open)) }
+                if open.is_empty() { Ok(*cleared) } else { Err(ReadingStop::Open(open)) }
             }
         }
     }

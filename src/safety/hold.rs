@@ -222,10 +222,9 @@ impl Builder<'_> {
     /// Closing what the last test left open, for a test that is energised.
     fn energise(&mut self) {
         let target = &self.check.setup;
-        let closing: Vec<String> =
-            self.state.setup().open.iter().filter(|device| !target.open.contains(device)).cloned().collect();
-        let lifts_first = self.lifts_now();
-        if !self.check.energised || (closing.is_empty() && !lifts_first) {
+        let before = if self.lifts_now() { isolation(self.ground, self.check) } else { self.state.setup().clone() };
+        let closes = before.open.iter().any(|device| !target.open.contains(device));
+        if !self.check.energised || !closes {
             return;
         }
         let mut setup = Setup {

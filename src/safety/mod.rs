@@ -14,6 +14,7 @@ pub mod places;
 mod point;
 mod proof;
 mod rules;
+mod simulate;
 mod state;
 mod wants;
 mod words;
@@ -28,6 +29,7 @@ pub use hazard::{Assessment, HazardBook, Hazards, Raised, Simulator, World};
 pub use point::{HoldPoint, Stage, Want};
 pub use makesafe::{Warning, is_standing, warnings};
 pub use rules::Refusal;
+pub use simulate::{CircuitSimulator, Drawn};
 pub use state::{DeadProof, NotDead, State, StateEvent};
 
 use crate::checks::Check;

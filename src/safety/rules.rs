@@ -228,7 +228,7 @@ fn equipment_left(ground: &Ground<'_>, check: &Check) -> Option<String> {
                     UnplugSet::All(_) => true,
                     UnplugSet::These(items) => items.contains(&e.id),
                 };
-            !unplugged && !(check.setup.off.contains(&e.id) && !e.plug)
+            !unplugged && (e.plug || !check.setup.off.contains(&e.id))
         })
         .map(|e| e.name.clone())
 }
@@ -293,13 +293,9 @@ pub(super) fn proofs_needed(ground: &Ground<'_>, check: &Check) -> Vec<String> {
     if supply && (loads || loop_amps > numbers.free_loop_amps) {
         add(numbers.supply_proof.clone());
     }
-    if let Some(place) = earth_path(check) {
-        let at_point = ground.site.point_ref(&place).is_some();
-        if at_point {
-            add(numbers.earth_proof.replace("{at}", &place));
-        } else if supply {
-            add(numbers.supply_proof.clone());
-        }
+    // At a board the bars themselves are read, and what that needs the check says.
+    if let Some(place) = earth_path(check).filter(|place| ground.site.point_ref(place).is_some()) {
+        add(numbers.earth_proof.replace("{at}", &place));
     }
     for end in check.setup.lift.iter().filter(|end| end.ends_with(".main-earth")) {
         if quiet_check(ground, check, end).is_some() {

@@ -238,8 +238,7 @@ impl State {
     pub fn judge(point: &HoldPoint, volts: &BTreeMap<String, f64>) -> Result<(), NotDead> {
         for want in &point.wants {
             let read = volts.get(&want.name).copied().unwrap_or(f64::INFINITY);
-            // Written so that a NaN fails too.
-            if !(read.abs() <= want.limit_volts) {
+            if read.is_nan() || read.abs() > want.limit_volts {
                 return Err(NotDead {
                     name: want.name.clone(),
                     between: want.between.clone(),

@@ -12,6 +12,7 @@ use crate::site::file::{Known, load_str};
 mod gates;
 mod hazards;
 mod points;
+mod real;
 mod states;
 
 /// A house on TN-C-S: two circuits on two RCDs, a heater without one, a water pipe.
