@@ -2,6 +2,7 @@
 
 pub mod exact;
 pub mod information;
+mod mixture;
 pub mod order;
 pub mod pair;
 mod panels;
