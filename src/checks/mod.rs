@@ -7,12 +7,14 @@ pub mod effort;
 pub mod energised;
 mod expand;
 mod select;
+pub mod sign;
 
 pub use available::{availability, whole_kit};
 pub use catalogue::{CheckError, catalogue, misfits};
 pub use check::Check;
 pub use effort::{transition, walk};
 pub use energised::{energised, supplied};
+pub use sign::sign_at;
 
 #[cfg(test)]
 mod tests;

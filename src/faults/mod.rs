@@ -7,6 +7,7 @@ pub mod enumerate;
 mod error;
 pub mod fault;
 pub mod pairs;
+mod telltale;
 mod valid;
 
 pub use apply::{edits, manner, value_prior};
@@ -14,6 +15,7 @@ pub use describe::{describe, repair_text};
 pub use enumerate::{Hypothesis, NOTHING_WRONG, Space, UNLISTED, enumerate};
 pub use error::FaultError;
 pub use fault::Fault;
+pub use telltale::{Telltale, looks, outcomes};
 pub use pairs::{PairList, best_first};
 
 #[cfg(test)]

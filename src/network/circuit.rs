@@ -234,6 +234,63 @@ impl Circuit {
         self.terminals.get(terminal).copied()
     }
 
+    /// Adds a resistance between two nodes.
+    pub fn bridge(&mut self, a: usize, b: usize, ohms: f64) {
+        self.add_branch(None, a, b, Law::Ohms(ohms));
+    }
+
+    /// Every number that a fault's value can set, in a fixed order: see [`Circuit::set_number`].
+    pub fn numbers(&self) -> Vec<f64> {
+        let mut out = Vec::with_capacity(self.branches.len() * 3 + self.devices.len() * 2 + 1);
+        for b in &self.branches {
+            out.push(b.series);
+            out.push(b.replaced.unwrap_or(-1.0));
+            out.push(match &b.law {
+                Law::Ohms(x) | Law::Farads(x) => *x,
+                Law::Load { part, .. } => *part,
+                _ => -1.0,
+            });
+        }
+        for d in &self.devices {
+            match &d.kind {
+                DeviceKind::Rcd { trip_override, seconds_override, .. } => {
+                    out.push(trip_override.unwrap_or(-1.0));
+                    out.push(seconds_override.unwrap_or(-1.0));
+                }
+                _ => out.extend([-1.0, -1.0]),
+            }
+        }
+        out.push(self.volts_override.unwrap_or(-1.0));
+        out
+    }
+
+    /// Sets number `index` of [`Circuit::numbers`].
+    pub fn set_number(&mut self, index: usize, value: f64) {
+        let branches = self.branches.len() * 3;
+        if index < branches {
+            let b = &mut self.branches[index / 3];
+            match index % 3 {
+                0 => b.series = value,
+                1 => b.replaced = Some(value),
+                _ => match &mut b.law {
+                    Law::Ohms(x) | Law::Farads(x) => *x = value,
+                    Law::Load { part, .. } => *part = value,
+                    _ => {}
+                },
+            }
+        } else if let Some(d) = self.devices.get_mut((index - branches) / 2) {
+            if let DeviceKind::Rcd { trip_override, seconds_override, .. } = &mut d.kind {
+                if (index - branches) % 2 == 0 {
+                    *trip_override = Some(value);
+                } else {
+                    *seconds_override = Some(value);
+                }
+            }
+        } else {
+            self.volts_override = Some(value);
+        }
+    }
+
     /// Adds a node under a name that is also a terminal.
     pub(super) fn add_node(&mut self, name: &str) -> usize {
         if let Some(&node) = self.terminals.get(name) {

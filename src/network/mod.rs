@@ -48,6 +48,8 @@ pub struct Prediction {
     pub unit: Unit,
     /// Devices that operated, in order.
     pub tripped: Vec<String>,
+    /// A, the magnitudes inside a clamp summed, of which some leaks into its reading; else 0.
+    pub enclosed: f64,
 }
 
 /// Why a network question has no answer.

@@ -330,6 +330,7 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
         }
     };
     let mut unit = Unit::None;
+    let mut enclosed = 0.0;
     let outcome = match probe {
         Probe::Volts {
             between,
@@ -359,6 +360,7 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
         Probe::Amps { around } => {
             unit = Unit::Ampere;
             let p = settled(&mut sw, &[], &mut tripped);
+            enclosed = around.iter().map(|&b| special::abs(p.amps[b])).sum();
             Outcome::Number(special::abs(around.iter().map(|&b| p.amps[b]).sum()))
         }
         Probe::Insulation { between } => {
@@ -412,8 +414,7 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
                 return Prediction {
                     outcome: Outcome::Word(Word::NoTrip),
                     unit,
-                    tripped: Vec::new(),
-                };
+                    tripped: Vec::new(), enclosed: 0.0 };
             };
             let amps = multiple * rated;
             let trip = match tester(solver, *rcd, *between, &sw, &p) {
@@ -483,8 +484,7 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
     Prediction {
         outcome,
         unit,
-        tripped,
-    }
+        tripped, enclosed }
 }
 
 /// An RCD tester at its place: what the core sees of its current.
