@@ -3,6 +3,7 @@
 pub mod condition;
 pub mod embedded;
 pub mod file;
+pub mod interview;
 pub mod lookup;
 pub mod model;
 pub mod names;
@@ -17,6 +18,7 @@ pub mod words;
 pub use condition::holds;
 pub use embedded::{embedded, embedded_names};
 pub use file::{Known, LoadedFile, SiteError, SiteWarning, load_path, load_str, load_value};
+pub use interview::{AnswerError, AnswerKind, Interview, Question};
 pub use lookup::lines_of;
 pub use model::*;
 pub use names::name_of;

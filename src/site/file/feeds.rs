@@ -174,16 +174,17 @@ pub fn wanted(boards: &[BoardForm], feeds: &Feeds<'_>, index: usize) -> Phase {
     // Fed boards come later in the order, so one pass from `index` on gathers its whole subtree.
     let mut inside = BTreeSet::from([index]);
     for &i in &feeds.order {
-        if let Fed::Board(from, form) = feeds.fed[i] {
-            if i != index && inside.contains(&from) {
-                inside.insert(i);
-                match form.phase {
-                    Some(PhaseForm::L1L2L3) => three = true,
-                    Some(phase) => {
-                        lines.insert(phase);
-                    }
-                    None => {}
+        if let Fed::Board(from, form) = feeds.fed[i]
+            && i != index
+            && inside.contains(&from)
+        {
+            inside.insert(i);
+            match form.phase {
+                Some(PhaseForm::L1L2L3) => three = true,
+                Some(phase) => {
+                    lines.insert(phase);
                 }
+                None => {}
             }
         }
         if !inside.contains(&i) {
