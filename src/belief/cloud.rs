@@ -38,7 +38,9 @@ impl Draws {
         let specs = &model.network.params.specs;
         let width = specs.len();
         let n = if width == 0 { 0 } else { z.len() / width };
-        let theta = (0..n * width).map(|i| at_normal(&specs[i % width].prior, z[i])).collect();
+        let theta = (0..n * width)
+            .map(|i| at_normal(&specs[i % width].prior, z[i]))
+            .collect();
         Self { n, z, theta, width }
     }
 
@@ -46,7 +48,10 @@ impl Draws {
     pub fn prior(model: &Model, n: usize, seed: u64) -> Self {
         let width = model.network.params.specs.len();
         let mut stream = Stream::new(seed, "prior", 0);
-        let z = stratified(n, width, &mut stream).into_iter().map(normal_quantile).collect();
+        let z = stratified(n, width, &mut stream)
+            .into_iter()
+            .map(normal_quantile)
+            .collect();
         Self::from_z(model, z)
     }
 
@@ -86,8 +91,17 @@ impl Cloud {
     pub fn prior(draws: Arc<Draws>, world: &World, seed: u64) -> Self {
         let n = draws.n;
         let mut stream = Stream::new(seed, "fault", own_of(world) as u64);
-        let own = stratified(n, own_of(world), &mut stream).into_iter().map(normal_quantile).collect();
-        Self { draws, own, ratio: vec![0.0; n], groups: Vec::new(), soft: Vec::new() }
+        let own = stratified(n, own_of(world), &mut stream)
+            .into_iter()
+            .map(normal_quantile)
+            .collect();
+        Self {
+            draws,
+            own,
+            ratio: vec![0.0; n],
+            groups: Vec::new(),
+            soft: Vec::new(),
+        }
     }
 
     /// Number of draws.
@@ -97,19 +111,55 @@ impl Cloud {
 
     /// The fault's own deviates of a draw.
     pub fn own(&self, draw: usize) -> &[f64] {
-        let k = if self.n() == 0 { 0 } else { self.own.len() / self.n() };
+        let k = if self.n() == 0 {
+            0
+        } else {
+            self.own.len() / self.n()
+        };
         &self.own[draw * k..(draw + 1) * k]
     }
 
     fn log_weights(&self, groups: &[Vec<f64>]) -> Vec<f64> {
-        (0..self.n()).map(|i| self.ratio[i] + groups.iter().map(|g| g[i]).sum::<f64>()).collect()
+        (0..self.n())
+            .map(|i| self.ratio[i] + groups.iter().map(|g| g[i]).sum::<f64>())
+            .collect()
     }
 
     /// Log evidence of the readings.
     pub fn log_evidence(&self) -> f64 {
         let w = self.log_weights(&self.groups);
         let true_one = log_sum_exp(&w) - ln(w.len().max(1) as f64);
-        if self.effective() >= 6.0 { true_one } else { true_one.max(self.soft_evidence() - 1.0) }
+        if self.effective() >= 6.0 {
+            true_one
+        } else {
+            true_one.max(self.soft_evidence() - 1.0)
+        }
+    }
+
+    /// Log evidence with one group left out.
+    pub fn log_evidence_without(&self, group: usize) -> f64 {
+        let sum = |all: &[Vec<f64>]| -> Vec<f64> {
+            (0..self.n())
+                .map(|i| {
+                    self.ratio[i]
+                        + all
+                            .iter()
+                            .enumerate()
+                            .filter(|(g, _)| *g != group)
+                            .map(|(_, l)| l[i])
+                            .sum::<f64>()
+                })
+                .collect()
+        };
+        let w = sum(&self.groups);
+        let n = ln(w.len().max(1) as f64);
+        let true_one = log_sum_exp(&w) - n;
+        let (normal, _) = normalise(&w);
+        if effective_size(&normal) >= 6.0 {
+            true_one
+        } else {
+            true_one.max(log_sum_exp(&sum(&self.soft)) - n - 1.0)
+        }
     }
 
     /// The same with spreads fourfold.
@@ -153,20 +203,40 @@ pub fn shown(solver: &QuickSolver<'_>, aim: &Aim) -> Shown {
     match &aim.probe {
         Some(probe) => {
             let p = read(solver, probe, &aim.sw, true);
-            Shown { outcome: p.outcome, enclosed: p.enclosed }
+            Shown {
+                outcome: p.outcome,
+                enclosed: p.enclosed,
+            }
         }
-        None => Shown { outcome: Outcome::Word(Word::No), enclosed: 0.0 },
+        None => Shown {
+            outcome: Outcome::Word(Word::No),
+            enclosed: 0.0,
+        },
     }
 }
 
 /// What a look or an uncircuited outcome says: probability of the word read, if it is about this reading.
 pub fn told(world: &World, reading: &Reading) -> Option<f64> {
-    told_by(world, &reading.test, &reading.at, &reading.hookup, &reading.parsed)
+    told_by(
+        world,
+        &reading.test,
+        &reading.at,
+        &reading.hookup,
+        &reading.parsed,
+    )
 }
 
-fn told_by(world: &World, test: &str, place: &str, hookup: &Hookup, parsed: &Parsed) -> Option<f64> {
+fn told_by(
+    world: &World,
+    test: &str,
+    place: &str,
+    hookup: &Hookup,
+    parsed: &Parsed,
+) -> Option<f64> {
     let word = |t: &Telltale| match parsed.value {
-        ParsedValue::Word { word } => serde_json::to_value(word).ok().and_then(|v| v.as_str().map(|w| w == t.word)),
+        ParsedValue::Word { word } => serde_json::to_value(word)
+            .ok()
+            .and_then(|v| v.as_str().map(|w| w == t.word)),
         _ => Some(false),
     };
     if let Hookup::Seen { at, what } = hookup {
@@ -179,7 +249,10 @@ fn told_by(world: &World, test: &str, place: &str, hookup: &Hookup, parsed: &Par
         let yes = matches!(parsed.value, ParsedValue::Word { word: Word::Yes });
         return Some(if yes { 1.0 - p } else { p });
     }
-    let t = world.outcomes.iter().find(|t| t.what == test && t.at == place)?;
+    let t = world
+        .outcomes
+        .iter()
+        .find(|t| t.what == test && t.at == place)?;
     let same = word(t)?;
     Some(if same { t.p } else { 1.0 - t.p })
 }
@@ -198,17 +271,29 @@ pub fn likelihoods(
     let n = cloud.n();
     let mut cores = vec![(0.0, 0.0); n];
     let mut slips = vec![(0.0, 0.0); n];
-    let Some(first) = group.readings.first() else { return (vec![0.0; n], vec![0.0; n]) };
-    let Some(row) = model.knowledge.error_of(&first.hookup) else { return (vec![0.0; n], vec![0.0; n]) };
+    let Some(first) = group.readings.first() else {
+        return (vec![0.0; n], vec![0.0; n]);
+    };
+    let Some(row) = model.knowledge.error_of(&first.hookup) else {
+        return (vec![0.0; n], vec![0.0; n]);
+    };
     for reading in &group.readings {
         let epoch = reading.epoch.min(worlds.len().saturating_sub(1));
-        let Some(world) = worlds.get_mut(epoch) else { continue };
-        add_reading(model, world, sound, cloud, reading, row, &mut cores, &mut slips);
+        let Some(world) = worlds.get_mut(epoch) else {
+            continue;
+        };
+        add_reading(
+            model, world, sound, cloud, reading, row, &mut cores, &mut slips,
+        );
     }
     let sum = |soft: bool| {
         (0..n)
             .map(|i| {
-                let (c, s) = if soft { (cores[i].1, slips[i].1) } else { (cores[i].0, slips[i].0) };
+                let (c, s) = if soft {
+                    (cores[i].1, slips[i].1)
+                } else {
+                    (cores[i].0, slips[i].0)
+                };
                 together(row, c, s)
             })
             .collect()
@@ -239,19 +324,31 @@ fn add_reading(
     }
     let shows = world.shows(reading.setup.provoke);
     let at = aim(world, &reading.setup, &reading.hookup);
-    let at_sound = if shows < 1.0 && world.edited { aim(sound, &reading.setup, &reading.hookup) } else { None };
+    let at_sound = if shows < 1.0 && world.edited {
+        aim(sound, &reading.setup, &reading.hookup)
+    } else {
+        None
+    };
     let Some(at) = at else { return };
     for i in 0..cloud.n() {
         world.set(cloud.own(i));
-        let values = Values { theta: cloud.draws.theta(i), common: &model.network.common };
+        let values = Values {
+            theta: cloud.draws.theta(i),
+            common: &model.network.common,
+        };
         let seen = shown(&QuickSolver::new(&world.wiring, values), &at);
-        let clear = at_sound.as_ref().map(|a| shown(&QuickSolver::new(&sound.wiring, values), a));
+        let clear = at_sound
+            .as_ref()
+            .map(|a| shown(&QuickSolver::new(&sound.wiring, values), a));
         for (soften, pick) in [(1.0, false), (SOFT, true)] {
             let mut c = core(row, seen, &reading.parsed, soften);
             if let Some(clear) = clear {
                 // The fault shows in this reading, or it does not.
                 let hidden = core(row, clear, &reading.parsed, soften);
-                c = log_sum_exp(&[ln(shows.max(1e-9)) + c, ln((1.0 - shows).max(1e-9)) + hidden]);
+                c = log_sum_exp(&[
+                    ln(shows.max(1e-9)) + c,
+                    ln((1.0 - shows).max(1e-9)) + hidden,
+                ]);
             }
             let s = slip(row, seen, &reading.parsed, soften);
             if pick {

@@ -33,10 +33,14 @@ const LEAST: f64 = 0.004;
 
 /// The signs of a complaint that fit its place, filled.
 fn signs(model: &Model, row: &SymptomRow, complaint: &Complaint) -> Vec<(Sign, Setup, Hookup)> {
-    let Some(at) = &complaint.at else { return Vec::new() };
+    let Some(at) = &complaint.at else {
+        return Vec::new();
+    };
     row.signs
         .iter()
-        .filter(|s| s.when.is_empty() || complaint.when.as_ref().is_some_and(|w| s.when.contains(w)))
+        .filter(|s| {
+            s.when.is_empty() || complaint.when.as_ref().is_some_and(|w| s.when.contains(w))
+        })
         .filter_map(|s| {
             let (mut setup, hookup) = sign_at(&model.site, &s.at, at, &s.setup, &s.hookup)?;
             if let Some(with) = &complaint.with
@@ -51,7 +55,9 @@ fn signs(model: &Model, row: &SymptomRow, complaint: &Complaint) -> Vec<(Sign, S
 
 fn shows(sign: &Sign, outcome: Outcome) -> bool {
     match outcome {
-        Outcome::Number(x) => sign.above.is_some_and(|a| x > a) || sign.below.is_some_and(|b| x < b),
+        Outcome::Number(x) => {
+            sign.above.is_some_and(|a| x > a) || sign.below.is_some_and(|b| x < b)
+        }
         Outcome::Word(w) => {
             let word = match w {
                 Word::Trips => "trips",
@@ -75,7 +81,9 @@ pub fn log_probability(
     draws: &Draws,
     n: usize,
 ) -> f64 {
-    let Some(row) = model.knowledge.symptom(&complaint.kind) else { return 0.0 };
+    let Some(row) = model.knowledge.symptom(&complaint.kind) else {
+        return 0.0;
+    };
     let table = match hypothesis {
         None => row.nothing_wrong,
         // Of two causes, either may be the one complained of.
@@ -99,17 +107,30 @@ pub fn log_probability(
     ln((table * factor).max(LEAST))
 }
 
-fn share(model: &Model, world: &mut World, signs: &[(Sign, Setup, Hookup)], draws: &Draws, n: usize) -> f64 {
+fn share(
+    model: &Model,
+    world: &mut World,
+    signs: &[(Sign, Setup, Hookup)],
+    draws: &Draws,
+    n: usize,
+) -> f64 {
     let n = n.min(draws.n).max(1);
     let own = world.unknowns.len();
-    let aims: Vec<_> = signs.iter().map(|(s, setup, hookup)| (s, aim(world, setup, hookup), world.shows(setup.provoke))).collect();
+    let aims: Vec<_> = signs
+        .iter()
+        .map(|(s, setup, hookup)| (s, aim(world, setup, hookup), world.shows(setup.provoke)))
+        .collect();
     let mut total = 0.0;
     for i in 0..n {
         // Fault values at the middles of equal shares, in an order of their own per unknown.
-        let z: Vec<f64> =
-            (0..own).map(|k| normal_quantile((((i * (2 * k + 5) + k) % n) as f64 + 0.5) / n as f64)).collect();
+        let z: Vec<f64> = (0..own)
+            .map(|k| normal_quantile((((i * (2 * k + 5) + k) % n) as f64 + 0.5) / n as f64))
+            .collect();
         world.set(&z);
-        let values = Values { theta: draws.theta(i), common: &model.network.common };
+        let values = Values {
+            theta: draws.theta(i),
+            common: &model.network.common,
+        };
         let solver = QuickSolver::new(&world.wiring, values);
         let mut miss: f64 = 1.0;
         for (sign, aim, p) in &aims {

@@ -45,15 +45,25 @@ impl Problem<'_> {
     /// Residual in spreads of each numeric reading at deviates `z` (parameters, then own).
     fn residuals(&mut self, z: &[f64]) -> Vec<f64> {
         let specs = &self.model.network.params.specs;
-        let theta: Vec<f64> = specs.iter().zip(z).map(|(s, &z)| at_normal(&s.prior, z)).collect();
+        let theta: Vec<f64> = specs
+            .iter()
+            .zip(z)
+            .map(|(s, &z)| at_normal(&s.prior, z))
+            .collect();
         let own = &z[self.params..];
         for world in self.worlds.iter_mut() {
             let k = world.unknowns.len();
             world.set(&own[..k.min(own.len())]);
         }
-        let values = Values { theta: &theta, common: &self.model.network.common };
-        let solvers: Vec<QuickSolver<'_>> =
-            self.worlds.iter().map(|w| QuickSolver::new(&w.wiring, values)).collect();
+        let values = Values {
+            theta: &theta,
+            common: &self.model.network.common,
+        };
+        let solvers: Vec<QuickSolver<'_>> = self
+            .worlds
+            .iter()
+            .map(|w| QuickSolver::new(&w.wiring, values))
+            .collect();
         self.targets
             .iter()
             .map(|t| {
@@ -66,7 +76,9 @@ impl Problem<'_> {
 
 /// Residual in spreads, pulled in where a slip is likelier than the reading.
 fn residual(t: &Target<'_>, seen: Shown) -> f64 {
-    let Outcome::Number(mean) = seen.outcome else { return 4.0 };
+    let Outcome::Number(mean) = seen.outcome else {
+        return 4.0;
+    };
     let rough = if t.parsed.rough { 4.0 } else { 1.0 };
     let raw = match t.parsed.value {
         ParsedValue::Value { value } if mean.is_finite() => {
@@ -86,7 +98,11 @@ fn residual(t: &Target<'_>, seen: Shown) -> f64 {
         ParsedValue::Over { .. } => 0.0,
         _ => 4.0,
     };
-    let share = slip_share(t.row, core(t.row, seen, t.parsed, 1.0), slip(t.row, seen, t.parsed, 1.0));
+    let share = slip_share(
+        t.row,
+        core(t.row, seen, t.parsed, 1.0),
+        slip(t.row, seen, t.parsed, 1.0),
+    );
     raw.clamp(-30.0, 30.0) * (1.0 - share).max(0.05).sqrt()
 }
 
@@ -107,13 +123,18 @@ pub fn refit(
     let guide: Vec<f64> = (0..cloud.n())
         .map(|i| cloud.ratio[i] + cloud.soft.iter().map(|g| g[i]).sum::<f64>())
         .collect();
-    let best = (0..cloud.n()).max_by(|&a, &b| guide[a].total_cmp(&guide[b])).unwrap_or(0);
+    let best = (0..cloud.n())
+        .max_by(|&a, &b| guide[a].total_cmp(&guide[b]))
+        .unwrap_or(0);
     let mut start: Vec<f64> = cloud.draws.z(best).to_vec();
     start.extend(cloud.own(best).iter().copied());
     start.resize(params + own, 0.0);
     let mut problem = problem(model, worlds, groups, params);
-    let fixed = |d: usize| d < params && matches!(model.network.params.specs[d].prior, Prior::Fixed { .. });
-    let is_switch = |d: usize| d < params && matches!(model.network.params.specs[d].prior, Prior::Switch { .. });
+    let fixed =
+        |d: usize| d < params && matches!(model.network.params.specs[d].prior, Prior::Fixed { .. });
+    let is_switch = |d: usize| {
+        d < params && matches!(model.network.params.specs[d].prior, Prior::Switch { .. })
+    };
     // Unmoved deviates rest at the prior's centre.
     let mut z = start.clone();
     let base = problem.residuals(&z);
@@ -126,7 +147,11 @@ pub fn refit(
         z[d] = keep + 0.25;
         let moved = problem.residuals(&z);
         z[d] = keep;
-        let most = moved.iter().zip(&base).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max);
+        let most = moved
+            .iter()
+            .zip(&base)
+            .map(|(a, b)| (a - b).abs())
+            .fold(0.0, f64::max);
         if most * 4.0 > 0.08 {
             active.push(d);
         } else {
@@ -134,13 +159,38 @@ pub fn refit(
         }
     }
     let (mode, root) = gauss_newton(&mut problem, z, &active);
-    let mut fitted = sample(model, problem.worlds, sound, cloud, groups, &weights, &mode, &root, &active, draws, seed, 1);
+    let mut fitted = sample(
+        model,
+        problem.worlds,
+        sound,
+        cloud,
+        groups,
+        &weights,
+        &mode,
+        &root,
+        &active,
+        draws,
+        seed,
+        1,
+    );
     if fitted.effective() < draws as f64 / 6.0 && !active.is_empty() {
         // Weighted mean and covariance of what was drawn, shrunk toward the Laplace root.
         let w = fitted.weights();
         let (mode, root) = moments(&fitted, &w, &mode, &root, &active, params);
-        let second =
-            sample(model, problem.worlds, sound, cloud, groups, &weights, &mode, &root, &active, draws, seed, 2);
+        let second = sample(
+            model,
+            problem.worlds,
+            sound,
+            cloud,
+            groups,
+            &weights,
+            &mode,
+            &root,
+            &active,
+            draws,
+            seed,
+            2,
+        );
         if second.effective() > fitted.effective() {
             fitted = second;
         }
@@ -148,7 +198,12 @@ pub fn refit(
     fitted
 }
 
-fn problem<'a>(model: &'a Model, worlds: &'a mut [World], groups: &'a [Group], params: usize) -> Problem<'a> {
+fn problem<'a>(
+    model: &'a Model,
+    worlds: &'a mut [World],
+    groups: &'a [Group],
+    params: usize,
+) -> Problem<'a> {
     let mut targets = Vec::new();
     for group in groups {
         for reading in &group.readings {
@@ -156,19 +211,32 @@ fn problem<'a>(model: &'a Model, worlds: &'a mut [World], groups: &'a [Group], p
                 continue;
             }
             let epoch = reading.epoch.min(worlds.len().saturating_sub(1));
-            let Some(world) = worlds.get(epoch) else { continue };
+            let Some(world) = worlds.get(epoch) else {
+                continue;
+            };
             if told(world, reading).is_some() {
                 continue;
             }
-            let (Some(aim), Some(row)) =
-                (aim(world, &reading.setup, &reading.hookup), model.knowledge.error_of(&reading.hookup))
-            else {
+            let (Some(aim), Some(row)) = (
+                aim(world, &reading.setup, &reading.hookup),
+                model.knowledge.error_of(&reading.hookup),
+            ) else {
                 continue;
             };
-            targets.push(Target { epoch, aim, row, parsed: &reading.parsed });
+            targets.push(Target {
+                epoch,
+                aim,
+                row,
+                parsed: &reading.parsed,
+            });
         }
     }
-    Problem { model, worlds, targets, params }
+    Problem {
+        model,
+        worlds,
+        targets,
+        params,
+    }
 }
 
 fn objective(z: &[f64], active: &[usize], r: &[f64]) -> f64 {
@@ -177,7 +245,11 @@ fn objective(z: &[f64], active: &[usize], r: &[f64]) -> f64 {
 }
 
 /// The mode, and a lower-triangular root of the covariance over the active deviates.
-fn gauss_newton(problem: &mut Problem<'_>, mut z: Vec<f64>, active: &[usize]) -> (Vec<f64>, DMatrix<f64>) {
+fn gauss_newton(
+    problem: &mut Problem<'_>,
+    mut z: Vec<f64>,
+    active: &[usize],
+) -> (Vec<f64>, DMatrix<f64>) {
     let k = active.len();
     let mut root = DMatrix::identity(k, k);
     if k == 0 {
@@ -200,7 +272,9 @@ fn gauss_newton(problem: &mut Problem<'_>, mut z: Vec<f64>, active: &[usize]) ->
         let rv = DVector::from_column_slice(&r);
         let zv = DVector::from_iterator(k, active.iter().map(|&d| z[d]));
         let h = j.transpose() * &j + DMatrix::identity(k, k);
-        let Some(chol) = h.clone().cholesky() else { break };
+        let Some(chol) = h.clone().cholesky() else {
+            break;
+        };
         // covariance = H⁻¹ = L⁻ᵀ L⁻¹
         if let Some(inverse) = chol.l().try_inverse() {
             root = inverse.transpose();
@@ -244,7 +318,13 @@ fn moments(
     params: usize,
 ) -> (Vec<f64>, DMatrix<f64>) {
     let k = active.len();
-    let value = |i: usize, d: usize| if d < params { cloud.draws.z(i)[d] } else { cloud.own(i)[d - params] };
+    let value = |i: usize, d: usize| {
+        if d < params {
+            cloud.draws.z(i)[d]
+        } else {
+            cloud.own(i)[d - params]
+        }
+    };
     let mut mean = vec![0.0; k];
     for (i, w) in weights.iter().enumerate() {
         for (m, &d) in mean.iter_mut().zip(active) {
@@ -255,7 +335,8 @@ fn moments(
     for (i, w) in weights.iter().enumerate() {
         for a in 0..k {
             for b in 0..k {
-                cov[(a, b)] += w * (value(i, active[a]) - mean[a]) * (value(i, active[b]) - mean[b]);
+                cov[(a, b)] +=
+                    w * (value(i, active[a]) - mean[a]) * (value(i, active[b]) - mean[b]);
             }
         }
     }
@@ -296,7 +377,12 @@ fn sample(
     let on: Vec<Option<f64>> = (0..params)
         .map(|d| match specs[d].prior {
             Prior::Switch { p } if p > 0.0 && p < 1.0 => {
-                let share: f64 = weights.iter().enumerate().filter(|(i, _)| old.draws.theta(*i)[d] > 0.5).map(|(_, w)| w).sum();
+                let share: f64 = weights
+                    .iter()
+                    .enumerate()
+                    .filter(|(i, _)| old.draws.theta(*i)[d] > 0.5)
+                    .map(|(_, w)| w)
+                    .sum();
                 Some((0.85 * share + 0.15 * p).clamp(0.02, 0.98))
             }
             _ => None,
@@ -305,7 +391,9 @@ fn sample(
     let mut z_all = Vec::with_capacity(n * params);
     let mut own_all = Vec::with_capacity(n * own);
     let mut ratio = Vec::with_capacity(n);
-    let log_det: f64 = (0..k).map(|i| ln(root[(i, i)].abs().max(1e-12) * WIDE)).sum();
+    let log_det: f64 = (0..k)
+        .map(|i| ln(root[(i, i)].abs().max(1e-12) * WIDE))
+        .sum();
     let density = StudentT::new(DOF);
     for i in 0..n {
         let row = &u[i * width..(i + 1) * width];
@@ -314,7 +402,9 @@ fn sample(
         let c = 1.0 - 2.0 / (9.0 * DOF) + q * (2.0 / (9.0 * DOF)).sqrt();
         let chi2 = (DOF * c * c * c).max(0.05);
         let scale = (DOF / chi2).sqrt();
-        let mut z: Vec<f64> = (0..params + own).map(|d| normal_quantile(row[d + 1])).collect();
+        let mut z: Vec<f64> = (0..params + own)
+            .map(|d| normal_quantile(row[d + 1]))
+            .collect();
         let e = DVector::from_iterator(k, active.iter().map(|&d| z[d]));
         let t = &e * scale;
         let moved = root * &t * WIDE;
@@ -327,13 +417,23 @@ fn sample(
         // Multivariate t density at t, and the root's determinant.
         log_ratio -= density.ln_pdf_multi(r2, k) - log_det;
         for (d, q) in on.iter().enumerate() {
-            let (Some(q), Prior::Switch { p }) = (*q, &specs[d].prior) else { continue };
+            let (Some(q), Prior::Switch { p }) = (*q, &specs[d].prior) else {
+                continue;
+            };
             let uniform = normal_cdf(z[d]);
             let is_on = uniform < q;
             // Map to the prior's own region of that state.
-            let inside = if is_on { uniform / q * p } else { p + (uniform - q) / (1.0 - q) * (1.0 - p) };
+            let inside = if is_on {
+                uniform / q * p
+            } else {
+                p + (uniform - q) / (1.0 - q) * (1.0 - p)
+            };
             z[d] = normal_quantile(inside.clamp(1e-9, 1.0 - 1e-9));
-            log_ratio += if is_on { ln(p / q) } else { ln((1.0 - p) / (1.0 - q)) };
+            log_ratio += if is_on {
+                ln(p / q)
+            } else {
+                ln((1.0 - p) / (1.0 - q))
+            };
         }
         own_all.extend(z[params..].iter().copied());
         z.truncate(params);
@@ -341,7 +441,13 @@ fn sample(
         ratio.push(log_ratio);
     }
     let draws = Arc::new(Draws::from_z(model, z_all));
-    let mut cloud = Cloud { draws, own: own_all, ratio, groups: Vec::new(), soft: Vec::new() };
+    let mut cloud = Cloud {
+        draws,
+        own: own_all,
+        ratio,
+        groups: Vec::new(),
+        soft: Vec::new(),
+    };
     for group in groups {
         let (l, s) = likelihoods(model, worlds, sound, &cloud, group);
         cloud.groups.push(l);

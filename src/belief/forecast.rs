@@ -11,7 +11,7 @@ use super::world::World;
 use crate::checks::Check;
 use crate::knowledge::Hookup;
 use crate::network::{Outcome, QuickSolver, Values};
-use crate::numeric::special::{exp, log_sum_exp, ln, normal_cdf};
+use crate::numeric::special::{exp, ln, log_sum_exp, normal_cdf};
 use crate::numeric::stats::systematic;
 use crate::quantity::{Parsed, ParsedValue, Word};
 
@@ -50,7 +50,11 @@ const FORECAST_DRAWS: usize = 24;
 impl Forecast {
     /// Quantile of a numeric forecast, SI; `None` if words hold most of it.
     pub fn quantile(&self, at: f64) -> Option<f64> {
-        let numbers: Vec<&Way> = self.ways.iter().filter(|w| matches!(w.outcome, Outcome::Number(_))).collect();
+        let numbers: Vec<&Way> = self
+            .ways
+            .iter()
+            .filter(|w| matches!(w.outcome, Outcome::Number(_)))
+            .collect();
         let total: f64 = numbers.iter().map(|w| w.weight).sum();
         if total < 0.5 {
             return None;
@@ -95,7 +99,10 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
     let weights = cloud.weights();
     let picks = systematic(&weights, FORECAST_DRAWS, 0.5);
     let mut world = c.world().clone();
-    let aims: Vec<_> = checks.iter().map(|k| aim(&world, &k.setup, &k.hookup)).collect();
+    let aims: Vec<_> = checks
+        .iter()
+        .map(|k| aim(&world, &k.setup, &k.hookup))
+        .collect();
     let faint: Vec<Option<_>> = checks
         .iter()
         .map(|k| {
@@ -118,7 +125,10 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
         }
         previous = pick;
         world.set(cloud.own(pick));
-        let values = Values { theta: cloud.draws.theta(pick), common: &model.network.common };
+        let values = Values {
+            theta: cloud.draws.theta(pick),
+            common: &model.network.common,
+        };
         let solver = QuickSolver::new(&world.wiring, values);
         let clear = QuickSolver::new(&sound.wiring, values);
         for ((k, check), f) in checks.iter().enumerate().zip(&mut out) {
@@ -126,7 +136,9 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
                 continue;
             }
             let Some(aim) = &aims[k] else { continue };
-            let Some(row) = model.knowledge.error_of(&check.hookup) else { continue };
+            let Some(row) = model.knowledge.error_of(&check.hookup) else {
+                continue;
+            };
             let way = |s: super::sight::Shown, weight: f64| {
                 let outcome = match s.outcome {
                     Outcome::Number(x) if x >= row.over => Outcome::Word(Word::Open),
@@ -136,12 +148,17 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
                     Outcome::Number(x) => spread(row, x, s.enclosed),
                     Outcome::Word(_) => 0.0,
                 };
-                Way { weight, outcome, sd }
+                Way {
+                    weight,
+                    outcome,
+                    sd,
+                }
             };
             match &faint[k] {
                 Some((shows, Some(sound_aim))) => {
                     f.ways.push(way(shown(&solver, aim), share * shows));
-                    f.ways.push(way(shown(&clear, sound_aim), share * (1.0 - shows)));
+                    f.ways
+                        .push(way(shown(&clear, sound_aim), share * (1.0 - shows)));
                 }
                 _ => f.ways.push(way(shown(&solver, aim), share)),
             }
@@ -155,16 +172,33 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
                 .filter(|t| t.at == *at && t.what == *what)
                 .fold(1.0 - BY_CHANCE, |m, t| m * (1.0 - t.p));
             f.ways = vec![
-                Way { weight: 1.0 - miss, outcome: Outcome::Word(Word::Yes), sd: 0.0 },
-                Way { weight: miss, outcome: Outcome::Word(Word::No), sd: 0.0 },
+                Way {
+                    weight: 1.0 - miss,
+                    outcome: Outcome::Word(Word::Yes),
+                    sd: 0.0,
+                },
+                Way {
+                    weight: miss,
+                    outcome: Outcome::Word(Word::No),
+                    sd: 0.0,
+                },
             ];
-        } else if let Some(t) = world.outcomes.iter().find(|t| t.what == check.test && t.at == check.at) {
-            let word = |w: &str| serde_json::from_value(serde_json::Value::String(w.to_owned())).ok();
+        } else if let Some(t) = world
+            .outcomes
+            .iter()
+            .find(|t| t.what == check.test && t.at == check.at)
+        {
+            let word =
+                |w: &str| serde_json::from_value(serde_json::Value::String(w.to_owned())).ok();
             if let Some(word) = word(&t.word) {
                 for way in &mut f.ways {
                     way.weight *= 1.0 - t.p;
                 }
-                f.ways.push(Way { weight: t.p, outcome: Outcome::Word(word), sd: 0.0 });
+                f.ways.push(Way {
+                    weight: t.p,
+                    outcome: Outcome::Word(word),
+                    sd: 0.0,
+                });
             }
         }
     }
@@ -175,7 +209,11 @@ impl Belief {
     /// Candidates that hold all but `tail` of the odds, at most `most`, unlisted apart.
     pub fn credible(&self, tail: f64, most: usize) -> Vec<(usize, f64)> {
         let mut all: Vec<(usize, f64)> = self.odds().hypotheses.clone();
-        if let Some(nothing) = self.candidates().iter().position(|c| c.cause == Cause::Nothing) {
+        if let Some(nothing) = self
+            .candidates()
+            .iter()
+            .position(|c| c.cause == Cause::Nothing)
+        {
             all.push((nothing, self.odds().nothing_wrong));
         }
         all.sort_by(|a, b| b.1.total_cmp(&a.1).then(a.0.cmp(&b.0)));
@@ -202,8 +240,9 @@ impl Belief {
             .par_iter()
             .map(|(i, _)| of_candidate(&model, &self.candidates()[*i], &sound, checks))
             .collect();
-        let forecasts =
-            (0..checks.len()).map(|k| columns.iter().map(|col| col[k].clone()).collect()).collect();
+        let forecasts = (0..checks.len())
+            .map(|k| columns.iter().map(|col| col[k].clone()).collect())
+            .collect();
         ForecastTable {
             candidates: credible.iter().map(|c| c.0).collect(),
             p: credible.iter().map(|c| c.1 / total.max(1e-300)).collect(),
@@ -216,7 +255,9 @@ impl Belief {
     pub fn surprise(&self, reading: &Reading) -> f64 {
         let check = check_of(reading);
         let table = self.forecasts(&[&check], 1e-3, 40);
-        let Some(row) = self.model().knowledge.error_of(&reading.hookup) else { return 1.0 };
+        let Some(row) = self.model().knowledge.error_of(&reading.hookup) else {
+            return 1.0;
+        };
         let mut tail = 0.0;
         for (f, p) in table.forecasts.first().into_iter().flatten().zip(&table.p) {
             for way in &f.ways {
@@ -230,12 +271,18 @@ impl Belief {
     pub fn log_mixture(&self, reading: &Reading) -> f64 {
         let check = check_of(reading);
         let table = self.forecasts(&[&check], 1e-3, 40);
-        let Some(row) = self.model().knowledge.error_of(&reading.hookup) else { return 0.0 };
+        let Some(row) = self.model().knowledge.error_of(&reading.hookup) else {
+            return 0.0;
+        };
         let mut terms = Vec::new();
         for (f, p) in table.forecasts.first().into_iter().flatten().zip(&table.p) {
             for way in &f.ways {
-                let seen = super::sight::Shown { outcome: way.outcome, enclosed: 0.0 };
-                terms.push(ln((p * way.weight).max(1e-300)) + core(row, seen, &reading.parsed, 1.0));
+                let seen = super::sight::Shown {
+                    outcome: way.outcome,
+                    enclosed: 0.0,
+                };
+                terms
+                    .push(ln((p * way.weight).max(1e-300)) + core(row, seen, &reading.parsed, 1.0));
             }
         }
         log_sum_exp(&terms)
@@ -251,11 +298,17 @@ fn tail_of(way: &Way, row: &crate::knowledge::ErrorRow, parsed: &Parsed) -> f64 
         (Outcome::Word(a), ParsedValue::Word { word }) => f64::from(u8::from(a == word)),
         (Outcome::Number(m), ParsedValue::Value { value }) => two_sided(value, m, way.sd * wider),
         (Outcome::Number(m), ParsedValue::Range { low, high }) => {
-            if m >= low && m <= high { 1.0 } else { two_sided(if m < low { low } else { high }, m, way.sd) }
+            if m >= low && m <= high {
+                1.0
+            } else {
+                two_sided(if m < low { low } else { high }, m, way.sd)
+            }
         }
         (Outcome::Number(m), ParsedValue::Over { over }) => normal_cdf((m - over) / way.sd),
         (Outcome::Number(m), ParsedValue::Under { under }) => normal_cdf((under - m) / way.sd),
-        (Outcome::Number(m), ParsedValue::Word { word: Word::Open }) => exp(ln(normal_cdf((m - row.over) / way.sd).max(1e-300))),
+        (Outcome::Number(m), ParsedValue::Word { word: Word::Open }) => {
+            exp(ln(normal_cdf((m - row.over) / way.sd).max(1e-300)))
+        }
         _ => 0.0,
     }
 }

@@ -47,11 +47,20 @@ impl Model {
         let space = enumerate(&knowledge, &site)?;
         let checks = catalogue(&knowledge, &network, &site)?;
         let sound = Wiring::new(network.circuit.clone());
-        Ok(Self { knowledge, site, network, space, checks, sound })
+        Ok(Self {
+            knowledge,
+            site,
+            network,
+            space,
+            checks,
+            sound,
+        })
     }
 
     /// Index of a check by test and place.
     pub fn check(&self, test: &str, at: &str) -> Option<usize> {
-        self.checks.iter().position(|c| c.test == test && c.at == at)
+        self.checks
+            .iter()
+            .position(|c| c.test == test && c.at == at)
     }
 }

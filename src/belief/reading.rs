@@ -32,8 +32,8 @@ pub struct Group {
 impl Group {
     /// Whether a reading belongs here: same test, place and circuit.
     pub fn takes(&self, reading: &Reading) -> bool {
-        self.readings
-            .first()
-            .is_some_and(|r| r.test == reading.test && r.at == reading.at && r.epoch == reading.epoch)
+        self.readings.first().is_some_and(|r| {
+            r.test == reading.test && r.at == reading.at && r.epoch == reading.epoch
+        })
     }
 }

@@ -20,7 +20,12 @@ pub struct Shown {
 
 /// Standard deviation of a reading of `mean`, SI.
 pub fn spread(row: &ErrorRow, mean: f64, enclosed: f64) -> f64 {
-    let parts = [row.relative * mean, row.absolute, row.resolution / 12f64.sqrt(), row.pickup * enclosed];
+    let parts = [
+        row.relative * mean,
+        row.absolute,
+        row.resolution / 12f64.sqrt(),
+        row.pickup * enclosed,
+    ];
     parts.iter().map(|p| p * p).sum::<f64>().sqrt().max(1e-12)
 }
 
@@ -34,12 +39,20 @@ pub fn core(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64) -> f64 {
         }
         Outcome::Number(mean) => mean,
     };
-    let sd = if mean.is_finite() { spread(row, mean, shown.enclosed) * soften } else { 1.0 };
+    let sd = if mean.is_finite() {
+        spread(row, mean, shown.enclosed) * soften
+    } else {
+        1.0
+    };
     let beyond = mean >= row.over;
     match parsed.value {
         ParsedValue::Value { value } if beyond => {
             // At the end of its range an instrument may still show a number.
-            if value >= 0.8 * row.over { -1.0 - ln(row.over) } else { f64::NEG_INFINITY }
+            if value >= 0.8 * row.over {
+                -1.0 - ln(row.over)
+            } else {
+                f64::NEG_INFINITY
+            }
         }
         ParsedValue::Value { value } => ln_normal_pdf(value, mean, sd),
         ParsedValue::Range { .. } if beyond => f64::NEG_INFINITY,
@@ -48,13 +61,25 @@ pub fn core(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64) -> f64 {
             ln_normal_pdf((low + high) / 2.0, mean, (sd * sd + wide * wide).sqrt())
         }
         ParsedValue::Over { over } => {
-            if mean.is_infinite() { 0.0 } else { ln(normal_cdf((mean - over) / sd).max(1e-300)) }
+            if mean.is_infinite() {
+                0.0
+            } else {
+                ln(normal_cdf((mean - over) / sd).max(1e-300))
+            }
         }
         ParsedValue::Under { under } => {
-            if mean.is_infinite() { f64::NEG_INFINITY } else { ln(normal_cdf((under - mean) / sd).max(1e-300)) }
+            if mean.is_infinite() {
+                f64::NEG_INFINITY
+            } else {
+                ln(normal_cdf((under - mean) / sd).max(1e-300))
+            }
         }
         ParsedValue::Word { word: Word::Open } => {
-            if beyond { 0.0 } else { ln(normal_cdf((mean - row.over) / sd).max(1e-300)) }
+            if beyond {
+                0.0
+            } else {
+                ln(normal_cdf((mean - row.over) / sd).max(1e-300))
+            }
         }
         ParsedValue::Word { .. } => f64::NEG_INFINITY,
     }
@@ -75,7 +100,8 @@ pub fn gross(row: &ErrorRow, parsed: &Parsed) -> f64 {
 /// Log density of a slip: a decimal or a prefix off, or anything.
 pub fn slip(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64) -> f64 {
     let anything = ln(0.6) + gross(row, parsed);
-    let (ParsedValue::Value { value }, Outcome::Number(mean)) = (parsed.value, shown.outcome) else {
+    let (ParsedValue::Value { value }, Outcome::Number(mean)) = (parsed.value, shown.outcome)
+    else {
         return anything;
     };
     if !mean.is_finite() {

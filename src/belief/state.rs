@@ -226,12 +226,19 @@ impl Belief {
             Cause::Nothing => ln(beside.nothing_wrong.max(1e-12)),
             Cause::Unlisted => ln(beside.unlisted.max(1e-12)),
             Cause::Faults(list) => {
-                let product: f64 = list.iter().map(|&s| ln(self.model.space.singles[s].prior.max(1e-300))).sum();
+                let product: f64 = list
+                    .iter()
+                    .map(|&s| ln(self.model.space.singles[s].prior.max(1e-300)))
+                    .sum();
                 product
             }
         };
         // After a repair that was found, nothing more being wrong is the usual case.
-        let log_prior = if matches!(cause, Cause::Nothing) && !self.repaired.is_empty() { 0.0 } else { log_prior };
+        let log_prior = if matches!(cause, Cause::Nothing) && !self.repaired.is_empty() {
+            0.0
+        } else {
+            log_prior
+        };
         let cloud = Cloud::prior(self.draws.clone(), &worlds[0], self.seed);
         Some(Candidate {
             hypothesis: self.hypothesis_of(&own),
@@ -249,9 +256,16 @@ impl Belief {
         let known = self.known();
         let n = self.model.space.singles.len();
         let mut causes = vec![Cause::Nothing, Cause::Unlisted];
-        causes.extend((0..n).filter(|s| !known.contains(s)).map(|s| Cause::Faults(vec![s])));
+        causes.extend(
+            (0..n)
+                .filter(|s| !known.contains(s))
+                .map(|s| Cause::Faults(vec![s])),
+        );
         let this = &*self;
-        self.candidates = causes.into_par_iter().filter_map(|c| this.candidate(c)).collect();
+        self.candidates = causes
+            .into_par_iter()
+            .filter_map(|c| this.candidate(c))
+            .collect();
     }
 
     /// Takes a complaint in.
@@ -265,7 +279,9 @@ impl Belief {
     fn hear(&mut self) {
         let (model, draws, complaints) = (&self.model, &self.draws, &self.complaints);
         let after_repair = !self.repaired.is_empty();
-        self.candidates.par_iter_mut().for_each(|c| c.hear(model, complaints, draws, after_repair));
+        self.candidates
+            .par_iter_mut()
+            .for_each(|c| c.hear(model, complaints, draws, after_repair));
     }
 
     /// Takes a reading in.
@@ -356,7 +372,11 @@ impl Belief {
     }
 
     fn log_joint(&self, c: &Candidate) -> f64 {
-        let evidence = if c.cause == Cause::Unlisted { self.unlisted.log_evidence() } else { c.cloud.log_evidence() };
+        let evidence = if c.cause == Cause::Unlisted {
+            self.unlisted.log_evidence()
+        } else {
+            c.cloud.log_evidence()
+        };
         c.log_prior + c.log_complaint + evidence + self.log_absent(c)
     }
 
@@ -395,7 +415,10 @@ impl Belief {
             .map(|i| {
                 let c = &self.candidates[i];
                 let mut worlds = c.worlds.clone();
-                (i, refit(model, &mut worlds, &sound, &c.cloud, groups, REFIT, seed))
+                (
+                    i,
+                    refit(model, &mut worlds, &sound, &c.cloud, groups, REFIT, seed),
+                )
             })
             .collect();
         for (i, cloud) in fitted {
@@ -410,16 +433,35 @@ impl Belief {
     /// Adds pairs whose bound may reach the odds; true if any was added.
     fn add_pairs(&mut self) -> bool {
         let bounds = self.pair_bounds();
-        let total = log_sum_exp(&self.candidates.iter().map(|c| self.log_joint(c)).collect::<Vec<_>>());
+        let total = log_sum_exp(
+            &self
+                .candidates
+                .iter()
+                .map(|c| self.log_joint(c))
+                .collect::<Vec<_>>(),
+        );
         let mut fresh: Vec<(f64, Vec<usize>)> = bounds
             .into_iter()
-            .filter(|(_, pair)| !self.candidates.iter().any(|c| c.cause == Cause::Faults(pair.clone())))
+            .filter(|(_, pair)| {
+                !self
+                    .candidates
+                    .iter()
+                    .any(|c| c.cause == Cause::Faults(pair.clone()))
+            })
             .collect();
         fresh.sort_by(|a, b| b.0.total_cmp(&a.0).then_with(|| a.1.cmp(&b.1)));
-        let worth = fresh.iter().take_while(|(b, _)| *b > total + ln(1e-3)).count().min(NEW_PAIRS);
+        let worth = fresh
+            .iter()
+            .take_while(|(b, _)| *b > total + ln(1e-3))
+            .count()
+            .min(NEW_PAIRS);
         let rest: Vec<f64> = fresh[worth..].iter().map(|f| f.0).collect();
         let left = log_sum_exp(&rest);
-        self.not_examined = if left.is_finite() { exp(left - log_sum_exp(&[left, total])) } else { 0.0 };
+        self.not_examined = if left.is_finite() {
+            exp(left - log_sum_exp(&[left, total]))
+        } else {
+            0.0
+        };
         let chosen: Vec<Vec<usize>> = fresh.into_iter().take(worth).map(|f| f.1).collect();
         if chosen.is_empty() {
             return false;
@@ -430,7 +472,12 @@ impl Belief {
             .into_par_iter()
             .filter_map(|pair| {
                 let mut c = this.candidate(Cause::Faults(pair))?;
-                c.hear(&this.model, &this.complaints, &this.draws, !this.repaired.is_empty());
+                c.hear(
+                    &this.model,
+                    &this.complaints,
+                    &this.draws,
+                    !this.repaired.is_empty(),
+                );
                 for group in &this.groups {
                     let (l, s) = likelihoods(&this.model, &mut c.worlds, &sound, &c.cloud, group);
                     c.cloud.groups.push(l);
@@ -448,7 +495,9 @@ impl Belief {
     /// either fault alone explains at best, or anything at all where both move it.
     fn pair_bounds(&self) -> Vec<(f64, Vec<usize>)> {
         let groups = self.groups.len();
-        let Some(nothing) = self.candidates.first() else { return Vec::new() };
+        let Some(nothing) = self.candidates.first() else {
+            return Vec::new();
+        };
         if groups == 0 || !self.repaired.is_empty() {
             return Vec::new();
         }
@@ -472,9 +521,19 @@ impl Belief {
                         .groups
                         .iter()
                         .zip(&nothing.cloud.groups)
-                        .map(|(a, b)| c.fitted || nothing.fitted || a.iter().zip(b).any(|(x, y)| (x - y).abs() > 0.1))
+                        .map(|(a, b)| {
+                            c.fitted
+                                || nothing.fitted
+                                || a.iter().zip(b).any(|(x, y)| (x - y).abs() > 0.1)
+                        })
                         .collect();
-                    Some(Single { index: list[0], prior: c.log_prior, complaint: c.log_complaint, best: tops, moved })
+                    Some(Single {
+                        index: list[0],
+                        prior: c.log_prior,
+                        complaint: c.log_complaint,
+                        best: tops,
+                        moved,
+                    })
                 }
                 _ => None,
             })
@@ -482,7 +541,13 @@ impl Belief {
         let saturated: Vec<f64> = (0..groups)
             .map(|g| singles.iter().map(|s| s.best[g]).fold(sound[g], f64::max))
             .collect();
-        let floor = log_sum_exp(&self.candidates.iter().map(|c| self.log_joint(c)).collect::<Vec<_>>()) + ln(1e-7);
+        let floor = log_sum_exp(
+            &self
+                .candidates
+                .iter()
+                .map(|c| self.log_joint(c))
+                .collect::<Vec<_>>(),
+        ) + ln(1e-7);
         let mut out = Vec::new();
         for (i, a) in singles.iter().enumerate() {
             if !a.moved.iter().any(|m| *m) {
@@ -499,7 +564,9 @@ impl Belief {
                 }
                 for g in 0..groups {
                     bound += match (a.moved[g], b.moved[g]) {
-                        (true, true) => a.best[g].max(b.best[g]).max(0.5 * (saturated[g] + a.best[g].max(b.best[g]))),
+                        (true, true) => a.best[g]
+                            .max(b.best[g])
+                            .max(0.5 * (saturated[g] + a.best[g].max(b.best[g]))),
                         (true, false) => a.best[g],
                         (false, true) => b.best[g],
                         (false, false) => sound[g],
@@ -518,7 +585,10 @@ impl Belief {
         let joint: Vec<f64> = self.candidates.iter().map(|c| self.log_joint(c)).collect();
         let (p, _) = posterior(&vec![0.0; joint.len()], &joint);
         let left = 1.0 - self.not_examined;
-        let mut odds = Odds { not_examined: self.not_examined, ..Odds::default() };
+        let mut odds = Odds {
+            not_examined: self.not_examined,
+            ..Odds::default()
+        };
         let mut groups: Vec<(String, f64)> = Vec::new();
         for (i, (c, p)) in self.candidates.iter().zip(&p).enumerate() {
             let p = p * left;
@@ -534,30 +604,79 @@ impl Belief {
                 }
             }
         }
-        odds.hypotheses.sort_by(|a, b| b.1.total_cmp(&a.1).then(a.0.cmp(&b.0)));
+        odds.hypotheses
+            .sort_by(|a, b| b.1.total_cmp(&a.1).then(a.0.cmp(&b.0)));
         groups.sort_by(|a, b| b.1.total_cmp(&a.1).then_with(|| a.0.cmp(&b.0)));
         odds.groups = groups;
         self.odds = odds;
     }
 
-    /// Natural log of what each group of readings says for a candidate against the rest, in bits.
+    /// For a candidate, how likely each group of readings is a slip: last entry, test, place, probability.
+    pub fn slips(&self, candidate: usize) -> Vec<(u64, String, String, f64)> {
+        let c = &self.candidates[candidate];
+        let weights = c.cloud.weights();
+        let mut out = Vec::new();
+        for (g, group) in self.groups.iter().enumerate() {
+            let (Some(last), Some(lik)) = (group.readings.last(), c.cloud.groups.get(g)) else {
+                continue;
+            };
+            let Some(row) = self.model.knowledge.error_of(&last.hookup) else {
+                continue;
+            };
+            // Of the mixture ln[(1−ε)c + εs], the slip part is at least ε·(gross density).
+            let floor: f64 = group
+                .readings
+                .iter()
+                .map(|r| ln(row.slip.max(1e-9)) + super::sight::gross(row, &r.parsed))
+                .sum();
+            let share: f64 = weights
+                .iter()
+                .zip(lik)
+                .map(|(w, l)| w * exp((floor - l).min(0.0)))
+                .sum();
+            out.push((last.entry, last.test.clone(), last.at.clone(), share));
+        }
+        out
+    }
+
+    /// Whether a group leads still when any one group of readings is left out.
+    pub fn survives_any_one_left_out(&self, group: &str) -> bool {
+        (0..self.groups.len()).all(|g| {
+            let mut mass: Vec<(&str, f64)> = Vec::new();
+            for c in &self.candidates {
+                let base = c.log_prior + c.log_complaint + self.log_absent(c);
+                let evidence = if c.cause == Cause::Unlisted {
+                    self.unlisted.log_evidence_without(g)
+                } else {
+                    c.cloud.log_evidence_without(g)
+                };
+                let joint = base + evidence;
+                match mass.iter_mut().find(|m| m.0 == c.group()) {
+                    Some(m) => m.1 = log_sum_exp(&[m.1, joint]),
+                    None => mass.push((c.group(), joint)),
+                }
+            }
+            mass.iter()
+                .max_by(|a, b| a.1.total_cmp(&b.1))
+                .is_some_and(|m| m.0 == group)
+        })
+    }
+
+    /// What each group of readings says for a candidate against the rest: last entry, test, place, bits.
     pub fn evidence(&self, candidate: usize) -> Vec<(u64, String, String, f64)> {
         let mut out = Vec::new();
         for (g, group) in self.groups.iter().enumerate() {
-            let Some(last) = group.readings.last() else { continue };
+            let Some(last) = group.readings.last() else {
+                continue;
+            };
             let without = |c: &Candidate| -> (f64, f64) {
                 if c.cause == Cause::Unlisted {
-                    let keep: Vec<&Vec<f64>> =
-                        self.unlisted.groups.iter().enumerate().filter(|(i, _)| *i != g).map(|x| x.1).collect();
-                    let n = self.unlisted.groups.first().map_or(1, Vec::len);
-                    let w: Vec<f64> = (0..n).map(|i| keep.iter().map(|k| k[i]).sum()).collect();
-                    return (self.unlisted.log_evidence(), log_sum_exp(&w) - ln(n as f64));
+                    return (
+                        self.unlisted.log_evidence(),
+                        self.unlisted.log_evidence_without(g),
+                    );
                 }
-                let full = c.cloud.log_evidence();
-                let mut less = c.cloud.clone();
-                less.groups.remove(g);
-                less.soft.remove(g);
-                (full, less.log_evidence())
+                (c.cloud.log_evidence(), c.cloud.log_evidence_without(g))
             };
             let (mut ours, mut rest_full, mut rest_less) = (0.0, Vec::new(), Vec::new());
             for (i, c) in self.candidates.iter().enumerate() {
@@ -570,7 +689,8 @@ impl Belief {
                     rest_less.push(base + less);
                 }
             }
-            let bits = (ours - (log_sum_exp(&rest_full) - log_sum_exp(&rest_less))) / std::f64::consts::LN_2;
+            let bits = (ours - (log_sum_exp(&rest_full) - log_sum_exp(&rest_less)))
+                / std::f64::consts::LN_2;
             out.push((last.entry, last.test.clone(), last.at.clone(), bits));
         }
         out

@@ -31,13 +31,34 @@ impl Unlisted {
         let worlds = (0..n)
             .map(|_| World::of_circuit(change(&model.network.circuit, &mut stream)))
             .collect();
-        Self { worlds, groups: Vec::new() }
+        Self {
+            worlds,
+            groups: Vec::new(),
+        }
     }
 
     /// Log evidence of the groups so far.
     pub fn log_evidence(&self) -> f64 {
         let n = self.worlds.len();
-        let w: Vec<f64> = (0..n).map(|i| self.groups.iter().map(|g| g[i]).sum()).collect();
+        let w: Vec<f64> = (0..n)
+            .map(|i| self.groups.iter().map(|g| g[i]).sum())
+            .collect();
+        crate::numeric::special::log_sum_exp(&w) - ln(n.max(1) as f64)
+    }
+
+    /// The same with one group left out.
+    pub fn log_evidence_without(&self, group: usize) -> f64 {
+        let n = self.worlds.len();
+        let w: Vec<f64> = (0..n)
+            .map(|i| {
+                self.groups
+                    .iter()
+                    .enumerate()
+                    .filter(|(g, _)| *g != group)
+                    .map(|(_, l)| l[i])
+                    .sum()
+            })
+            .collect();
         crate::numeric::special::log_sum_exp(&w) - ln(n.max(1) as f64)
     }
 
@@ -55,24 +76,36 @@ impl Unlisted {
         let n = self.worlds.len();
         let mut cores = vec![0.0; n];
         let mut slips = vec![0.0; n];
-        let Some(row) = group.readings.first().and_then(|r| model.knowledge.error_of(&r.hookup)) else {
+        let Some(row) = group
+            .readings
+            .first()
+            .and_then(|r| model.knowledge.error_of(&r.hookup))
+        else {
             return vec![0.0; n];
         };
         for reading in &group.readings {
             for (i, world) in self.worlds.iter().enumerate() {
                 let broad = ln(BROAD) + gross(row, &reading.parsed);
-                let Some(aim) = aim(world, &reading.setup, &reading.hookup) else { continue };
+                let Some(aim) = aim(world, &reading.setup, &reading.hookup) else {
+                    continue;
+                };
                 let (c, s) = match super::cloud::told(world, reading) {
                     Some(p) => (ln(p.max(1e-6)), ln(0.3)),
                     None => {
-                        let values = Values { theta: draws.theta(i % draws.n), common: &model.network.common };
+                        let values = Values {
+                            theta: draws.theta(i % draws.n),
+                            common: &model.network.common,
+                        };
                         let seen = shown(&QuickSolver::new(&world.wiring, values), &aim);
                         // A structured guess hits the size, seldom the digits: its spread is widened.
                         let wide = match seen.outcome {
                             Outcome::Number(_) => 6.0,
                             Outcome::Word(_) => 1.0,
                         };
-                        (core(row, seen, &reading.parsed, wide), slip(row, seen, &reading.parsed, wide))
+                        (
+                            core(row, seen, &reading.parsed, wide),
+                            slip(row, seen, &reading.parsed, wide),
+                        )
                     }
                 };
                 cores[i] += log_add_exp(ln(1.0 - BROAD) + c, broad);
@@ -90,7 +123,11 @@ fn change(sound: &Circuit, stream: &mut Stream) -> Circuit {
     if stream.chance(0.5) {
         let keyed: Vec<usize> = circuit.keys.values().copied().collect();
         if let Some(&b) = keyed.get(stream.below(keyed.len().max(1))) {
-            circuit.branches[b].series = if stream.chance(0.4) { f64::INFINITY } else { ohms };
+            circuit.branches[b].series = if stream.chance(0.4) {
+                f64::INFINITY
+            } else {
+                ohms
+            };
         }
     } else {
         let shown: Vec<usize> = circuit
@@ -100,7 +137,10 @@ fn change(sound: &Circuit, stream: &mut Stream) -> Circuit {
             .map(|(_, &n)| n)
             .collect();
         if shown.len() > 1 {
-            let (a, b) = (shown[stream.below(shown.len())], shown[stream.below(shown.len())]);
+            let (a, b) = (
+                shown[stream.below(shown.len())],
+                shown[stream.below(shown.len())],
+            );
             if a != b {
                 circuit.bridge(a, b, ohms);
             }

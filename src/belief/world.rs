@@ -89,7 +89,9 @@ impl World {
         // (fault index, is a position) of each unknown.
         let mut of: Vec<(usize, bool)> = Vec::new();
         for fault in faults {
-            let Some(kind) = model.knowledge.fault(&fault.kind) else { continue };
+            let Some(kind) = model.knowledge.fault(&fault.kind) else {
+                continue;
+            };
             if let Some(manner) = &kind.manner {
                 world.manners.push(manner.clone());
             }
@@ -107,7 +109,10 @@ impl World {
             if kind.position && fault.position.is_none() {
                 fault.position = Some(0.5);
                 of.push((physical.len(), true));
-                world.unknowns.push(Prior::Uniform { low: 0.0, high: 1.0 });
+                world.unknowns.push(Prior::Uniform {
+                    low: 0.0,
+                    high: 1.0,
+                });
             }
             physical.push(fault);
         }
@@ -115,12 +120,18 @@ impl World {
             return Ok(world);
         }
         let circuit = |faults: &[Fault]| -> Result<Circuit, WorldError> {
-            Ok(model.network.edited(&edits(&model.knowledge, &model.site, faults)?)?)
+            Ok(model
+                .network
+                .edited(&edits(&model.knowledge, &model.site, faults)?)?)
         };
         let base = circuit(&physical)?;
         let at = base.numbers();
         for (unknown, &(fault, position)) in of.iter().enumerate() {
-            let start = if position { 0.5 } else { physical[fault].value.unwrap_or(1.0) };
+            let start = if position {
+                0.5
+            } else {
+                physical[fault].value.unwrap_or(1.0)
+            };
             let with = |value: f64| -> Result<Vec<f64>, WorldError> {
                 let mut faults = physical.clone();
                 if position {
@@ -139,8 +150,16 @@ impl World {
                 let linear = Form::Linear(x - slope * start, slope);
                 let reciprocal = Form::Over(x * start);
                 // A reciprocal gives y = x / 0.8 exactly; anything else here is linear.
-                let form = if (y * 0.8 - x).abs() <= 1e-9 * x.abs() { reciprocal } else { linear };
-                world.slots.push(Slot { number, unknown, form });
+                let form = if (y * 0.8 - x).abs() <= 1e-9 * x.abs() {
+                    reciprocal
+                } else {
+                    linear
+                };
+                world.slots.push(Slot {
+                    number,
+                    unknown,
+                    form,
+                });
             }
         }
         world.edited = true;
@@ -150,7 +169,11 @@ impl World {
 
     /// Values of the unknowns at standard normal deviates.
     pub fn values(&self, z: &[f64]) -> Vec<f64> {
-        self.unknowns.iter().zip(z).map(|(prior, &z)| at_normal(prior, z)).collect()
+        self.unknowns
+            .iter()
+            .zip(z)
+            .map(|(prior, &z)| at_normal(prior, z))
+            .collect()
     }
 
     /// Sets the unknowns.
@@ -170,7 +193,11 @@ impl World {
     pub fn shows(&self, provoke: Option<Provoke>) -> f64 {
         self.manners
             .iter()
-            .map(|m| provoke.and_then(|p| m.provoked.get(&p).copied()).unwrap_or(m.shows))
+            .map(|m| {
+                provoke
+                    .and_then(|p| m.provoked.get(&p).copied())
+                    .unwrap_or(m.shows)
+            })
             .fold(1.0, f64::min)
     }
 }

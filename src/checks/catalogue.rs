@@ -27,7 +27,11 @@ pub struct CheckError {
 ///
 /// # Errors
 /// A selector, condition or name in braces that has no meaning.
-pub fn catalogue(knowledge: &Knowledge, network: &Network, site: &Site) -> Result<Vec<Check>, CheckError> {
+pub fn catalogue(
+    knowledge: &Knowledge,
+    network: &Network,
+    site: &Site,
+) -> Result<Vec<Check>, CheckError> {
     let mut out = expanded(knowledge, site)?;
     out.retain(|check| misfit(check, network, site).is_none());
     Ok(out)
@@ -38,11 +42,21 @@ pub fn catalogue(knowledge: &Knowledge, network: &Network, site: &Site) -> Resul
 ///
 /// # Errors
 /// As [`catalogue`].
-pub fn misfits(knowledge: &Knowledge, network: &Network, site: &Site) -> Result<Vec<CheckError>, CheckError> {
+pub fn misfits(
+    knowledge: &Knowledge,
+    network: &Network,
+    site: &Site,
+) -> Result<Vec<CheckError>, CheckError> {
     let amiss = |check: &Check| {
-        misfit(check, network, site).map(|why| CheckError { check: check.test.clone(), why: format!("at {}: {why}", check.at) })
+        misfit(check, network, site).map(|why| CheckError {
+            check: check.test.clone(),
+            why: format!("at {}: {why}", check.at),
+        })
     };
-    Ok(expanded(knowledge, site)?.iter().filter_map(amiss).collect())
+    Ok(expanded(knowledge, site)?
+        .iter()
+        .filter_map(amiss)
+        .collect())
 }
 
 fn misfit(check: &Check, network: &Network, site: &Site) -> Option<String> {
@@ -51,41 +65,67 @@ fn misfit(check: &Check, network: &Network, site: &Site) -> Option<String> {
         return Some(why.to_string());
     }
     match &check.hookup {
-        Hookup::Seen { at, .. } => (!can_be_looked_at(at, site)).then(|| format!("there is no `{at}` to look at here")),
-        hookup => circuit.probe(hookup, &check.setup.on).err().map(|why| why.to_string()),
+        Hookup::Seen { at, .. } => {
+            (!can_be_looked_at(at, site)).then(|| format!("there is no `{at}` to look at here"))
+        }
+        hookup => circuit
+            .probe(hookup, &check.setup.on)
+            .err()
+            .map(|why| why.to_string()),
     }
 }
 
 /// Whether a look has such a place (contract §3, `seen`).
 fn can_be_looked_at(at: &str, site: &Site) -> bool {
-    let place = ["service", "point", "circuit", "board", "bond", "electrode", "equipment"]
-        .iter()
-        .any(|class| places(site, class).iter().any(|place| place.id == at));
-    let earthing = |board: &str| site.board_index(board).and_then(|b| site.boards.get(b)?.earthing.as_ref());
+    let place = [
+        "service",
+        "point",
+        "circuit",
+        "board",
+        "bond",
+        "electrode",
+        "equipment",
+    ]
+    .iter()
+    .any(|class| places(site, class).iter().any(|place| place.id == at));
+    let earthing = |board: &str| {
+        site.board_index(board)
+            .and_then(|b| site.boards.get(b)?.earthing.as_ref())
+    };
     place
-        || at.strip_suffix(".link").is_some_and(|board| earthing(board).is_some_and(|e| e.link))
-        || at.strip_suffix(".main-earth").is_some_and(|board| earthing(board).is_some_and(|e| e.main_earth.is_some()))
+        || at
+            .strip_suffix(".link")
+            .is_some_and(|board| earthing(board).is_some_and(|e| e.link))
+        || at
+            .strip_suffix(".main-earth")
+            .is_some_and(|board| earthing(board).is_some_and(|e| e.main_earth.is_some()))
 }
 
 fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError> {
     let mut out: Vec<Check> = Vec::new();
     for (row, form) in knowledge.checks.iter().enumerate() {
-        let fail = |why: String| CheckError { check: form.id.clone(), why };
+        let fail = |why: String| CheckError {
+            check: form.id.clone(),
+            why,
+        };
         let each = instances(&form.each, site, &knowledge.equipment)
             .ok_or_else(|| fail(format!("`each` cannot be `{}`", form.each)))?;
         let first = out.len();
         for instance in each {
             let mut fits = true;
             for word in &form.only {
-                fits &= holds(word, &instance.place, site, &knowledge.equipment)
-                    .ok_or_else(|| fail(format!("`{word}` in `only` is no condition on a place")))?;
+                fits &=
+                    holds(word, &instance.place, site, &knowledge.equipment).ok_or_else(|| {
+                        fail(format!("`{word}` in `only` is no condition on a place"))
+                    })?;
             }
             if !fits {
                 continue;
             }
             match made(row, form, &instance, site) {
                 Ok(check) => {
-                    let same = |have: &Check| have.setup == check.setup && have.hookup == check.hookup;
+                    let same =
+                        |have: &Check| have.setup == check.setup && have.hookup == check.hookup;
                     if !out[first..].iter().any(same) {
                         out.push(check);
                     }
@@ -117,7 +157,11 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
         hold: filler.hold(&form.hold)?,
         needs: filler.texts(&form.needs)?,
         proves: filler.proofs(&form.proves)?,
-        hazard: form.hazard.as_ref().map(|text| filler.text(text)).transpose()?,
+        hazard: form
+            .hazard
+            .as_ref()
+            .map(|text| filler.text(text))
+            .transpose()?,
         limits: form.limits.clone(),
         recheck_only: form.recheck_only,
         staged: form.staged,
@@ -127,10 +171,16 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
 
 /// Dead readings, and whatever lifts an end, are made with everything off that could feed back.
 fn sources_off(mut setup: Setup, hookup: &Hookup, site: &Site) -> Setup {
-    let dead = matches!(hookup, Hookup::Insulation { .. } | Hookup::Continuity { .. });
+    let dead = matches!(
+        hookup,
+        Hookup::Insulation { .. } | Hookup::Continuity { .. }
+    );
     if dead || !setup.lift.is_empty() {
         for source in &site.sources {
-            setup.sources.entry(source.id.clone()).or_insert(SourceMode::Off);
+            setup
+                .sources
+                .entry(source.id.clone())
+                .or_insert(SourceMode::Off);
         }
     }
     setup
@@ -144,7 +194,10 @@ fn stand(instance: &Instance, site: &Site) -> String {
         Spot::Bond(_) | Spot::Electrode(_) => place.id.clone(),
         _ => match place.point(site) {
             Some(point) => site.point_id(point),
-            None => site.boards.get(place.board(site)).map_or_else(String::new, |b| b.id.clone()),
+            None => site
+                .boards
+                .get(place.board(site))
+                .map_or_else(String::new, |b| b.id.clone()),
         },
     }
 }

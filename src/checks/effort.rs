@@ -12,7 +12,8 @@ use crate::site::Site;
 /// and dead is proved, once.
 pub fn transition(from: &Setup, to: &Setup, dead_work: bool, site: &Site, effort: &Effort) -> f64 {
     let apart = |a: &[String], b: &[String]| {
-        let (a, b): (BTreeSet<&String>, BTreeSet<&String>) = (a.iter().collect(), b.iter().collect());
+        let (a, b): (BTreeSet<&String>, BTreeSet<&String>) =
+            (a.iter().collect(), b.iter().collect());
         a.symmetric_difference(&b).count() as f64
     };
     let newly_open = to.open.iter().any(|device| !from.open.contains(device));
@@ -25,15 +26,29 @@ pub fn transition(from: &Setup, to: &Setup, dead_work: bool, site: &Site, effort
     minutes += plugs(from, to, site, effort);
     minutes += effort.on_off * (apart(&from.on, &to.on) + apart(&from.off, &to.off));
     let loads = |setup: &Setup| -> Vec<String> {
-        setup.load.iter().map(|load| format!("{} {}", load.at, load.watts)).collect()
+        setup
+            .load
+            .iter()
+            .map(|load| format!("{} {}", load.at, load.watts))
+            .collect()
     };
     minutes += effort.load * apart(&loads(from), &loads(to));
     if to.provoke.is_some() && to.provoke != from.provoke {
         minutes += effort.provoke;
     }
-    let modes = |setup: &Setup| -> Vec<String> { setup.sources.iter().map(|(id, mode)| format!("{id} {mode:?}")).collect() };
-    let changed: BTreeSet<String> =
-        modes(from).iter().chain(&modes(to)).filter_map(|m| m.split(' ').next()).map(str::to_owned).collect();
+    let modes = |setup: &Setup| -> Vec<String> {
+        setup
+            .sources
+            .iter()
+            .map(|(id, mode)| format!("{id} {mode:?}"))
+            .collect()
+    };
+    let changed: BTreeSet<String> = modes(from)
+        .iter()
+        .chain(&modes(to))
+        .filter_map(|m| m.split(' ').next())
+        .map(str::to_owned)
+        .collect();
     let kept = |id: &String| from.sources.get(id) == to.sources.get(id);
     minutes + effort.source * changed.iter().filter(|id| !kept(id)).count() as f64
 }
@@ -42,7 +57,12 @@ pub fn transition(from: &Setup, to: &Setup, dead_work: bool, site: &Site, effort
 fn plugs(from: &Setup, to: &Setup, site: &Site, effort: &Effort) -> f64 {
     let out = |setup: &Setup| -> BTreeSet<String> {
         match &setup.unplug {
-            UnplugSet::All(_) => site.equipment.iter().filter(|e| e.plug).map(|e| e.id.clone()).collect(),
+            UnplugSet::All(_) => site
+                .equipment
+                .iter()
+                .filter(|e| e.plug)
+                .map(|e| e.id.clone())
+                .collect(),
             UnplugSet::These(list) => list.iter().cloned().collect(),
         }
     };
@@ -52,7 +72,11 @@ fn plugs(from: &Setup, to: &Setup, site: &Site, effort: &Effort) -> f64 {
 
 /// Minutes of walking from one place to another (boards, points, bonds, by id).
 pub fn walk(from: &str, to: &str, effort: &Effort) -> f64 {
-    if from.is_empty() || from == to { 0.0 } else { effort.walk }
+    if from.is_empty() || from == to {
+        0.0
+    } else {
+        effort.walk
+    }
 }
 
 impl Check {
@@ -62,7 +86,11 @@ impl Check {
     /// A board is walked to where devices or ends change there.
     pub fn minutes_from(&self, from: &Setup, place: &str, site: &Site, effort: &Effort) -> f64 {
         let at_board = from.open != self.setup.open || from.lift != self.setup.lift;
-        let board = if at_board { self.board_of_work(from, site) } else { None };
+        let board = if at_board {
+            self.board_of_work(from, site)
+        } else {
+            None
+        };
         let walked = match board {
             Some(board) => walk(place, &board, effort) + walk(&board, &self.place, effort),
             None => walk(place, &self.place, effort),

@@ -15,9 +15,15 @@ use crate::site::{Feed, PointRef, Site, SourcePlace};
 /// while anything of the site is supplied; dead readings and looks follow the parts they touch.
 pub fn energised(setup: &Setup, hookup: &Hookup, site: &Site) -> bool {
     let live = supplied(setup, site);
-    let touches = |id: &String| parts_of(id, setup, site).iter().any(|part| live.contains(part));
+    let touches = |id: &String| {
+        parts_of(id, setup, site)
+            .iter()
+            .any(|part| live.contains(part))
+    };
     match hookup {
-        Hookup::Insulation { between: [a, b], .. } => a.iter().chain(b).any(touches),
+        Hookup::Insulation {
+            between: [a, b], ..
+        } => a.iter().chain(b).any(touches),
         Hookup::Continuity { between } => between.iter().any(touches),
         Hookup::Seen { at, .. } => touches(at),
         _ => !live.is_empty(),
@@ -36,7 +42,9 @@ pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
     for (index, board) in site.boards.iter().enumerate() {
         let incoming = match &board.feed {
             Feed::Service => "service".to_owned(),
-            Feed::Submain { board: from, rcd, .. } => {
+            Feed::Submain {
+                board: from, rcd, ..
+            } => {
                 let feed = format!("{}.feed", board.id);
                 if !open(&format!("{}.breaker", board.id)) {
                     join(&rcd.clone().unwrap_or_else(|| bars(site, *from)), &feed);
@@ -51,12 +59,24 @@ pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
             join(&incoming, &main.id);
         }
         for rcd in board.rcds.iter().filter(|rcd| !open(&rcd.id)) {
-            let hangs = board.circuits.iter().find(|c| c.rcd.as_ref() == Some(&rcd.id));
-            let main = hangs.and_then(|c| c.main.clone()).unwrap_or_else(|| bars(site, index));
+            let hangs = board
+                .circuits
+                .iter()
+                .find(|c| c.rcd.as_ref() == Some(&rcd.id));
+            let main = hangs
+                .and_then(|c| c.main.clone())
+                .unwrap_or_else(|| bars(site, index));
             join(rcd.after.as_ref().unwrap_or(&main), &rcd.id);
         }
-        for circuit in board.circuits.iter().filter(|c| !open(&format!("{}.breaker", c.id))) {
-            let lifted = setup.lift.iter().any(|end| end.starts_with(&format!("{}.L", circuit.id)));
+        for circuit in board
+            .circuits
+            .iter()
+            .filter(|c| !open(&format!("{}.breaker", c.id)))
+        {
+            let lifted = setup
+                .lift
+                .iter()
+                .any(|end| end.starts_with(&format!("{}.L", circuit.id)));
             if !lifted {
                 let main = circuit.main.clone().unwrap_or_else(|| bars(site, index));
                 join(circuit.rcd.as_ref().unwrap_or(&main), &circuit.id);
@@ -82,7 +102,13 @@ pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
     }
     let mut live = BTreeSet::new();
     while let Some(part) = edge.pop() {
-        edge.extend(ways.get(&part).into_iter().flatten().filter(|next| !live.contains(*next)).cloned());
+        edge.extend(
+            ways.get(&part)
+                .into_iter()
+                .flatten()
+                .filter(|next| !live.contains(*next))
+                .cloned(),
+        );
         live.insert(part);
     }
     live
@@ -90,16 +116,27 @@ pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
 
 /// The load side of a board's first main switch.
 fn bars(site: &Site, board: usize) -> String {
-    site.boards.get(board).map_or_else(String::new, |b| b.mains.first().map_or(&b.id, |m| &m.id).clone())
+    site.boards.get(board).map_or_else(String::new, |b| {
+        b.mains.first().map_or(&b.id, |m| &m.id).clone()
+    })
 }
 
 /// The parts, as [`supplied`] names them, that a terminal, end or place belongs to.
 fn parts_of(id: &str, setup: &Setup, site: &Site) -> Vec<String> {
     let mut words = id.split(['.', '@']);
-    let (head, next) = (words.next().unwrap_or_default(), words.next().unwrap_or_default());
+    let (head, next) = (
+        words.next().unwrap_or_default(),
+        words.next().unwrap_or_default(),
+    );
     if head == "service" || site.circuit_index(head).is_some() {
-        let cut = site.point_ref(&format!("{head}.{next}")).is_some_and(|point| beyond_split(point, setup, site));
-        return if cut { Vec::new() } else { vec![head.to_owned()] };
+        let cut = site
+            .point_ref(&format!("{head}.{next}"))
+            .is_some_and(|point| beyond_split(point, setup, site));
+        return if cut {
+            Vec::new()
+        } else {
+            vec![head.to_owned()]
+        };
     }
     if let Some(board) = site.board_index(head).and_then(|b| site.boards.get(b)) {
         return match next {
@@ -112,9 +149,12 @@ fn parts_of(id: &str, setup: &Setup, site: &Site) -> Vec<String> {
     if site.rcd_index(head).is_some() || site.main_switch_index(head).is_some() {
         return vec![head.to_owned()];
     }
-    let equipment = site.equipment_index(head).and_then(|e| site.equipment.get(e));
+    let equipment = site
+        .equipment_index(head)
+        .and_then(|e| site.equipment.get(e));
     let here = equipment.filter(|e| !unplugged(&e.id, e.plug, setup));
-    here.map(|e| parts_of(&site.point_id(e.at), setup, site)).unwrap_or_default()
+    here.map(|e| parts_of(&site.point_id(e.at), setup, site))
+        .unwrap_or_default()
 }
 
 fn unplugged(id: &str, plug: bool, setup: &Setup) -> bool {
@@ -128,7 +168,11 @@ fn unplugged(id: &str, plug: bool, setup: &Setup) -> bool {
 fn beyond_split(point: PointRef, setup: &Setup, site: &Site) -> bool {
     let circuit = site.circuit_of(point);
     let cut = |p: usize| {
-        circuit.points.get(p).is_some_and(|p| setup.lift.contains(&format!("{}.{}.split", circuit.id, p.id)))
+        circuit.points.get(p).is_some_and(|p| {
+            setup
+                .lift
+                .contains(&format!("{}.{}.split", circuit.id, p.id))
+        })
     };
     let mut at = circuit.points.get(point.point).and_then(|p| p.from);
     for _ in 0..circuit.points.len() {

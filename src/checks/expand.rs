@@ -28,15 +28,26 @@ pub(crate) struct Filler<'a> {
 impl Filler<'_> {
     /// An id or a text.
     pub fn text(&self, form: &str) -> Result<String, Miss> {
-        let extra = |name: &str| self.instance.extra.iter().find(|(have, _)| *have == name).map(|(_, v)| v.clone());
+        let extra = |name: &str| {
+            self.instance
+                .extra
+                .iter()
+                .find(|(have, _)| *have == name)
+                .map(|(_, v)| v.clone())
+        };
         fill(form, |name| match name {
             // Of two circuits, what is called the place is both.
             "at-name" if !self.instance.extra.is_empty() => Some(self.name()),
             _ => extra(name).or_else(|| self.instance.place.names(self.site, name)),
         })
         .map_err(|e| {
-            let known = words::has(words::ID_NAMES, &e.name) || words::has(words::TEXT_NAMES, &e.name);
-            if known { Miss::Absent } else { Miss::Unknown(e.to_string()) }
+            let known =
+                words::has(words::ID_NAMES, &e.name) || words::has(words::TEXT_NAMES, &e.name);
+            if known {
+                Miss::Absent
+            } else {
+                Miss::Unknown(e.to_string())
+            }
         })
     }
 
@@ -48,7 +59,11 @@ impl Filler<'_> {
         };
         match self.instance.extra.as_slice() {
             [("a", a), ("b", b)] => {
-                format!("{} and {}", circuit(a).unwrap_or_default(), circuit(b).unwrap_or_default())
+                format!(
+                    "{} and {}",
+                    circuit(a).unwrap_or_default(),
+                    circuit(b).unwrap_or_default()
+                )
             }
             [("conductor", line)] => format!("{place}, {line}"),
             _ => place,
@@ -69,10 +84,17 @@ impl Filler<'_> {
         let mut out = Vec::new();
         for form in forms {
             for id in self.ids(std::slice::from_ref(form), false)? {
-                let part = id.split('@').next().and_then(|body| body.strip_suffix(".L"));
+                let part = id
+                    .split('@')
+                    .next()
+                    .and_then(|body| body.strip_suffix(".L"));
                 match part.and_then(|part| self.site.phase_of(part)) {
                     Some(Phase::Three) => {
-                        out.extend(lines_of(Phase::Three).iter().map(|line| self.site.on_line(&id, Some(line))));
+                        out.extend(
+                            lines_of(Phase::Three)
+                                .iter()
+                                .map(|line| self.site.on_line(&id, Some(line))),
+                        );
                     }
                     _ => out.push(id),
                 }
@@ -85,7 +107,10 @@ impl Filler<'_> {
     fn ids(&self, forms: &[String], plugs_only: bool) -> Result<Vec<String>, Miss> {
         let mut out: Vec<String> = Vec::new();
         for form in forms {
-            let many = match form.strip_prefix('{').and_then(|rest| rest.strip_suffix('}')) {
+            let many = match form
+                .strip_prefix('{')
+                .and_then(|rest| rest.strip_suffix('}'))
+            {
                 Some(name) if words::has(words::LIST_NAMES, name) => self.list(name, plugs_only)?,
                 _ => vec![self.text(form)?],
             };
@@ -108,14 +133,24 @@ impl Filler<'_> {
         };
         Ok(match name {
             "mains" => {
-                let boards = site.boards.iter().filter(|b| matches!(b.feed, Feed::Service));
-                boards.flat_map(|b| &b.mains).map(|m| m.id.clone()).collect()
+                let boards = site
+                    .boards
+                    .iter()
+                    .filter(|b| matches!(b.feed, Feed::Service));
+                boards
+                    .flat_map(|b| &b.mains)
+                    .map(|m| m.id.clone())
+                    .collect()
             }
             "all-breakers" => breakers(site, place.board(site), None),
             "rcd-breakers" | "other-breakers" => {
                 let (board, rcd) = place.rcd(site).ok_or(Miss::Absent)?;
-                let own = place.circuit(site).and_then(|(b, c)| site.boards.get(b)?.circuits.get(c));
-                let own = own.filter(|_| name == "other-breakers").map(|c| format!("{}.breaker", c.id));
+                let own = place
+                    .circuit(site)
+                    .and_then(|(b, c)| site.boards.get(b)?.circuits.get(c));
+                let own = own
+                    .filter(|_| name == "other-breakers")
+                    .map(|c| format!("{}.breaker", c.id));
                 let mut all = breakers(site, board, Some(rcd));
                 all.retain(|id| Some(id) != own.as_ref());
                 all
@@ -141,14 +176,22 @@ impl Filler<'_> {
             load: form
                 .load
                 .iter()
-                .map(|load| Ok(Load { at: self.text(&load.at)?, watts: load.watts }))
+                .map(|load| {
+                    Ok(Load {
+                        at: self.text(&load.at)?,
+                        watts: load.watts,
+                    })
+                })
                 .collect::<Result<_, Miss>>()?,
             provoke: form.provoke,
             sources: self.sources(form)?,
         })
     }
 
-    fn sources(&self, form: &Setup) -> Result<std::collections::BTreeMap<String, crate::knowledge::SourceMode>, Miss> {
+    fn sources(
+        &self,
+        form: &Setup,
+    ) -> Result<std::collections::BTreeMap<String, crate::knowledge::SourceMode>, Miss> {
         let mut out = std::collections::BTreeMap::new();
         for (id, mode) in &form.sources {
             if id == "all" {
@@ -164,32 +207,70 @@ impl Filler<'_> {
     pub fn hookup(&self, form: &Hookup) -> Result<Hookup, Miss> {
         let at = |at: &Option<String>| at.as_ref().map(|at| self.text(at)).transpose();
         Ok(match form {
-            Hookup::Volts { between, meter } => Hookup::Volts { between: self.two(between)?, meter: *meter },
-            Hookup::Amps { around } if around.len() == 1 => {
-                Hookup::Amps { around: around.iter().map(|t| self.terminal(t)).collect::<Result<_, Miss>>()? }
-            }
-            Hookup::Amps { around } => Hookup::Amps { around: self.joined(around)? },
-            Hookup::Insulation { between: [a, b], test_volts } => {
-                Hookup::Insulation { between: [self.joined(a)?, self.joined(b)?], test_volts: *test_volts }
-            }
-            Hookup::Continuity { between } => Hookup::Continuity { between: self.two(between)? },
-            Hookup::Loop { between, amps } => Hookup::Loop { between: self.two(between)?, amps: *amps },
-            Hookup::TripTime { rcd, at: place, multiple, half_cycle } => Hookup::TripTime {
+            Hookup::Volts { between, meter } => Hookup::Volts {
+                between: self.two(between)?,
+                meter: *meter,
+            },
+            Hookup::Amps { around } if around.len() == 1 => Hookup::Amps {
+                around: around
+                    .iter()
+                    .map(|t| self.terminal(t))
+                    .collect::<Result<_, Miss>>()?,
+            },
+            Hookup::Amps { around } => Hookup::Amps {
+                around: self.joined(around)?,
+            },
+            Hookup::Insulation {
+                between: [a, b],
+                test_volts,
+            } => Hookup::Insulation {
+                between: [self.joined(a)?, self.joined(b)?],
+                test_volts: *test_volts,
+            },
+            Hookup::Continuity { between } => Hookup::Continuity {
+                between: self.two(between)?,
+            },
+            Hookup::Loop { between, amps } => Hookup::Loop {
+                between: self.two(between)?,
+                amps: *amps,
+            },
+            Hookup::TripTime {
+                rcd,
+                at: place,
+                multiple,
+                half_cycle,
+            } => Hookup::TripTime {
                 rcd: self.text(rcd)?,
                 at: at(place)?,
                 multiple: *multiple,
                 half_cycle: *half_cycle,
             },
-            Hookup::Ramp { rcd, at: place } => Hookup::Ramp { rcd: self.text(rcd)?, at: at(place)? },
-            Hookup::Holds { device } => Hookup::Holds { device: self.text(device)? },
+            Hookup::Ramp { rcd, at: place } => Hookup::Ramp {
+                rcd: self.text(rcd)?,
+                at: at(place)?,
+            },
+            Hookup::Holds { device } => Hookup::Holds {
+                device: self.text(device)?,
+            },
             Hookup::Lamp { at } => Hookup::Lamp { at: self.text(at)? },
-            Hookup::Seen { at, what } => Hookup::Seen { at: self.text(at)?, what: what.clone() },
+            Hookup::Seen { at, what } => Hookup::Seen {
+                at: self.text(at)?,
+                what: what.clone(),
+            },
         })
     }
 
     /// Hold points.
     pub fn hold(&self, forms: &[HoldForm]) -> Result<Vec<HoldForm>, Miss> {
-        forms.iter().map(|h| Ok(HoldForm { point: h.point.clone(), text: self.text(&h.text)? })).collect()
+        forms
+            .iter()
+            .map(|h| {
+                Ok(HoldForm {
+                    point: h.point.clone(),
+                    text: self.text(&h.text)?,
+                })
+            })
+            .collect()
     }
 
     /// Names of proofs.
@@ -199,7 +280,15 @@ impl Filler<'_> {
 
     /// Proofs given.
     pub fn proofs(&self, forms: &[Proof]) -> Result<Vec<Proof>, Miss> {
-        forms.iter().map(|p| Ok(Proof { what: self.text(&p.what)?, ..p.clone() })).collect()
+        forms
+            .iter()
+            .map(|p| {
+                Ok(Proof {
+                    what: self.text(&p.what)?,
+                    ..p.clone()
+                })
+            })
+            .collect()
     }
 }
 
@@ -207,9 +296,15 @@ impl Filler<'_> {
 fn breakers(site: &Site, board: usize, rcd: Option<&str>) -> Vec<String> {
     let on = |have: &Option<String>| rcd.is_none_or(|rcd| have.as_deref() == Some(rcd));
     let circuits = site.boards.get(board).into_iter().flat_map(|b| &b.circuits);
-    let mut out: Vec<String> = circuits.filter(|c| on(&c.rcd)).map(|c| format!("{}.breaker", c.id)).collect();
+    let mut out: Vec<String> = circuits
+        .filter(|c| on(&c.rcd))
+        .map(|c| format!("{}.breaker", c.id))
+        .collect();
     for sub in &site.boards {
-        if let Feed::Submain { board: from, rcd, .. } = &sub.feed {
+        if let Feed::Submain {
+            board: from, rcd, ..
+        } = &sub.feed
+        {
             if *from == board && on(rcd) {
                 out.push(format!("{}.breaker", sub.id));
             }

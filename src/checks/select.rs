@@ -15,15 +15,31 @@ pub(crate) struct Instance {
 }
 
 /// Every instance of a selector of [`crate::knowledge::words::EACH`]; `None`: no such selector.
-pub(crate) fn instances(each: &str, site: &Site, equipment: &[EquipmentRow]) -> Option<Vec<Instance>> {
+pub(crate) fn instances(
+    each: &str,
+    site: &Site,
+    equipment: &[EquipmentRow],
+) -> Option<Vec<Instance>> {
     let plain = |list: Vec<Place>| -> Vec<Instance> {
-        list.into_iter().map(|place| Instance { at: place.id.clone(), place, extra: Vec::new() }).collect()
+        list.into_iter()
+            .map(|place| Instance {
+                at: place.id.clone(),
+                place,
+                extra: Vec::new(),
+            })
+            .collect()
     };
     let main_board = || -> Vec<Place> {
-        places(site, "board").into_iter().filter(|p| p.spot == Spot::Board(site.main_board)).collect()
+        places(site, "board")
+            .into_iter()
+            .filter(|p| p.spot == Spot::Board(site.main_board))
+            .collect()
     };
     let only = |class: &str, word: &str| -> Vec<Place> {
-        places(site, class).into_iter().filter(|p| holds(word, p, site, equipment) == Some(true)).collect()
+        places(site, class)
+            .into_iter()
+            .filter(|p| holds(word, p, site, equipment) == Some(true))
+            .collect()
     };
     Some(match each {
         "once" | "main-board" => plain(main_board()),
@@ -38,7 +54,9 @@ pub(crate) fn instances(each: &str, site: &Site, equipment: &[EquipmentRow]) -> 
         "outlet" => plain(
             places(site, "point")
                 .into_iter()
-                .filter(|p| matches!(p.spot, Spot::Point(r) if site.point(r).kind == PointKind::Outlet))
+                .filter(
+                    |p| matches!(p.spot, Spot::Point(r) if site.point(r).kind == PointKind::Outlet),
+                )
                 .collect(),
         ),
         "inner-point" => plain(
@@ -57,7 +75,10 @@ pub(crate) fn instances(each: &str, site: &Site, equipment: &[EquipmentRow]) -> 
 
 /// Whether another point goes on from this one.
 fn goes_on(site: &Site, point: PointRef) -> bool {
-    site.circuit_of(point).points.iter().any(|p| p.from == Some(point.point))
+    site.circuit_of(point)
+        .points
+        .iter()
+        .any(|p| p.from == Some(point.point))
 }
 
 /// A point of each circuit, chosen by the points' metres.
@@ -65,24 +86,39 @@ fn per_circuit(site: &Site, choose: impl Fn(&[f64]) -> Option<usize>) -> Vec<Pla
     let points = places(site, "point");
     let mut out = Vec::new();
     for circuit in places(site, "circuit") {
-        let own: Vec<&Place> = points.iter().filter(|p| p.circuit(site) == circuit.circuit(site)).collect();
-        let metres: Vec<f64> = own.iter().filter_map(|p| p.point(site)).map(|p| site.point(p).metres).collect();
-        out.extend(choose(&metres).and_then(|i| own.get(i)).map(|p| (*p).clone()));
+        let own: Vec<&Place> = points
+            .iter()
+            .filter(|p| p.circuit(site) == circuit.circuit(site))
+            .collect();
+        let metres: Vec<f64> = own
+            .iter()
+            .filter_map(|p| p.point(site))
+            .map(|p| site.point(p).metres)
+            .collect();
+        out.extend(
+            choose(&metres)
+                .and_then(|i| own.get(i))
+                .map(|p| (*p).clone()),
+        );
     }
     out
 }
 
 fn farthest(metres: &[f64]) -> Option<usize> {
-    (0..metres.len()).rev().max_by(|&a, &b| metres[a].total_cmp(&metres[b]))
+    (0..metres.len())
+        .rev()
+        .max_by(|&a, &b| metres[a].total_cmp(&metres[b]))
 }
 
 /// Of at least three points, the one nearest to half the longest, never the last.
 fn nearest_middle(metres: &[f64]) -> Option<usize> {
     let end = farthest(metres).filter(|_| metres.len() >= 3)?;
     let middle = 0.5 * metres[end];
-    (0..metres.len())
-        .filter(|&i| i != end)
-        .min_by(|&a, &b| (metres[a] - middle).abs().total_cmp(&(metres[b] - middle).abs()))
+    (0..metres.len()).filter(|&i| i != end).min_by(|&a, &b| {
+        (metres[a] - middle)
+            .abs()
+            .total_cmp(&(metres[b] - middle).abs())
+    })
 }
 
 fn main_lines(site: &Site, boards: Vec<Place>) -> Vec<Instance> {
@@ -94,7 +130,10 @@ fn main_lines(site: &Site, boards: Vec<Place>) -> Vec<Instance> {
         place: place.clone(),
         extra: vec![("conductor", line.to_owned())],
     };
-    boards.iter().flat_map(|place| ["L1", "L2", "L3"].map(|l| line(place, l))).collect()
+    boards
+        .iter()
+        .flat_map(|place| ["L1", "L2", "L3"].map(|l| line(place, l)))
+        .collect()
 }
 
 /// Pairs of circuits on different neutral bars; the place is the first.

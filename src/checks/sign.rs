@@ -7,10 +7,26 @@ use crate::site::{Site, place};
 
 /// Setup and hookup of a sign at a place of one of `classes`; `None` where it does not fit there.
 /// Of a frame or a pipe (`kettle.frame`, `water.pipe`) the thing itself is meant.
-pub fn sign_at(site: &Site, classes: &[String], at: &str, setup: &Setup, hookup: &Hookup) -> Option<(Setup, Hookup)> {
-    let id = at.strip_suffix(".frame").or_else(|| at.strip_suffix(".pipe")).unwrap_or(at);
+pub fn sign_at(
+    site: &Site,
+    classes: &[String],
+    at: &str,
+    setup: &Setup,
+    hookup: &Hookup,
+) -> Option<(Setup, Hookup)> {
+    let id = at
+        .strip_suffix(".frame")
+        .or_else(|| at.strip_suffix(".pipe"))
+        .unwrap_or(at);
     let place = place::find(site, classes, id)?;
-    let instance = Instance { at: id.to_owned(), extra: Vec::new(), place };
-    let filler = Filler { site, instance: &instance };
+    let instance = Instance {
+        at: id.to_owned(),
+        extra: Vec::new(),
+        place,
+    };
+    let filler = Filler {
+        site,
+        instance: &instance,
+    };
     Some((filler.setup(setup).ok()?, filler.hookup(hookup).ok()?))
 }

@@ -58,7 +58,10 @@ fn ats(checks: &[Check]) -> Vec<&str> {
 }
 
 fn open(devices: &[&str]) -> Setup {
-    Setup { open: devices.iter().map(|d| (*d).to_owned()).collect(), ..Setup::default() }
+    Setup {
+        open: devices.iter().map(|d| (*d).to_owned()).collect(),
+        ..Setup::default()
+    }
 }
 
 #[test]
@@ -66,19 +69,37 @@ fn selectors_choose_their_places() {
     let s = site(HOUSE);
     let of = |each: &str, at: &str| -> Vec<String> {
         let hookup = format!("hookup = {{ quantity = \"seen\", at = \"{at}\", what = \"burnt\" }}");
-        made(&s, &format!("id = \"x\"\neach = \"{each}\"\n{hookup}")).into_iter().map(|c| c.at).collect()
+        made(&s, &format!("id = \"x\"\neach = \"{each}\"\n{hookup}"))
+            .into_iter()
+            .map(|c| c.at)
+            .collect()
     };
     assert_eq!(of("once", "{at}"), ["msb"]);
     assert_eq!(of("sub-board", "{at}"), ["shed"]);
     assert_eq!(of("outlet", "{at}"), ["c1.p1", "c1.p2", "c1.p3", "c2.p1"]);
-    assert_eq!(of("last-point", "{at}"), ["c1.p3", "c2.p1", "c3.p1", "s1.p1"]);
-    assert_eq!(of("split", "{at}"), ["c1.p1"], "9 of 20 m is nearest the middle");
+    assert_eq!(
+        of("last-point", "{at}"),
+        ["c1.p3", "c2.p1", "c3.p1", "s1.p1"]
+    );
+    assert_eq!(
+        of("split", "{at}"),
+        ["c1.p1"],
+        "9 of 20 m is nearest the middle"
+    );
     assert_eq!(of("circuit-on-rcd", "{at}"), ["c1", "c2"]);
-    assert_eq!(of("circuit-pair", "{b}"), ["c1+c2", "c1+c3"], "the same look at c3 from c2 is one");
+    assert_eq!(
+        of("circuit-pair", "{b}"),
+        ["c1+c2", "c1+c3"],
+        "the same look at c3 from c2 is one"
+    );
     assert_eq!(of("plug-equipment", "{at}"), ["kettle"]);
     assert_eq!(of("electrode", "{at}"), ["electrode", "shed.electrode"]);
     assert_eq!(of("main-line", "{at}"), Vec::<String>::new());
-    assert_eq!(of("point", "{rcd}.x"), Vec::<String>::new(), "no such place: left out");
+    assert_eq!(
+        of("point", "{rcd}.x"),
+        Vec::<String>::new(),
+        "no such place: left out"
+    );
 }
 
 #[test]
@@ -94,7 +115,10 @@ fn lists_become_devices_and_equipment() {
         "id = \"x\"\neach = \"main-board\"\nsetup = { open = [\"{all-breakers}\"], off = [\"{all-equipment}\"] }\n\
          hookup = { quantity = \"volts\", between = [\"{at}.PE\", \"soil\"] }",
     );
-    assert_eq!(all[0].setup.open, ["c1.breaker", "c2.breaker", "c3.breaker", "shed.breaker"]);
+    assert_eq!(
+        all[0].setup.open,
+        ["c1.breaker", "c2.breaker", "c3.breaker", "shed.breaker"]
+    );
     assert_eq!(all[0].setup.off, ["kettle", "hws"]);
 }
 
@@ -103,7 +127,10 @@ fn three_lines_are_joined_or_the_first_is_meant() {
     let text = HOUSE
         .replace(r#""phases": 1"#, r#""phases": 3"#)
         .replace(r#""poles": 1}"#, r#""poles": 3}"#)
-        .replace(r#""name": "hot water","#, r#""name": "hot water", "phase": "L1L2L3","#);
+        .replace(
+            r#""name": "hot water","#,
+            r#""name": "hot water", "phase": "L1L2L3","#,
+        );
     let s = site(&text);
     let insulation = made(
         &s,
@@ -111,15 +138,36 @@ fn three_lines_are_joined_or_the_first_is_meant() {
          hookup = { quantity = \"insulation\", between = [[\"{at}.L\", \"{at}.N\"], [\"{at}.PE\"]], test_volts = 500 }",
     );
     let heater = insulation.iter().find(|c| c.at == "c3").unwrap();
-    assert_eq!(heater.setup.lift, ["c3.L1@board", "c3.L2@board", "c3.L3@board"]);
-    let Hookup::Insulation { between: [joined, _], .. } = &heater.hookup else { panic!() };
+    assert_eq!(
+        heater.setup.lift,
+        ["c3.L1@board", "c3.L2@board", "c3.L3@board"]
+    );
+    let Hookup::Insulation {
+        between: [joined, _],
+        ..
+    } = &heater.hookup
+    else {
+        panic!()
+    };
     assert_eq!(joined, &["c3.L1", "c3.L2", "c3.L3", "c3.N"]);
-    let volts = made(&s, "id = \"x\"\neach = \"point\"\nhookup = { quantity = \"volts\", between = [\"{at}.L\", \"{at}.N\"] }");
-    let Hookup::Volts { between, .. } = &volts.iter().find(|c| c.at == "c3.p1").unwrap().hookup else { panic!() };
+    let volts = made(
+        &s,
+        "id = \"x\"\neach = \"point\"\nhookup = { quantity = \"volts\", between = [\"{at}.L\", \"{at}.N\"] }",
+    );
+    let Hookup::Volts { between, .. } = &volts.iter().find(|c| c.at == "c3.p1").unwrap().hookup
+    else {
+        panic!()
+    };
     assert_eq!(between[0], "c3.p1.L1");
-    let pairs = made(&s, "id = \"x\"\neach = \"circuit-pair\"\nhookup = { quantity = \"continuity\", between = [\"{a}.N\", \"{b}.N\"] }");
+    let pairs = made(
+        &s,
+        "id = \"x\"\neach = \"circuit-pair\"\nhookup = { quantity = \"continuity\", between = [\"{a}.N\", \"{b}.N\"] }",
+    );
     assert_eq!(ats(&pairs), ["c1+c2", "c1+c3", "c2+c3"]);
-    let lines = made(&s, "id = \"x\"\neach = \"main-line\"\nhookup = { quantity = \"volts\", between = [\"{at}.{conductor}\", \"{at}.N\"] }");
+    let lines = made(
+        &s,
+        "id = \"x\"\neach = \"main-line\"\nhookup = { quantity = \"volts\", between = [\"{at}.{conductor}\", \"{at}.N\"] }",
+    );
     assert_eq!(ats(&lines), ["msb.L1", "msb.L2", "msb.L3"]);
 }
 
@@ -127,14 +175,23 @@ fn three_lines_are_joined_or_the_first_is_meant() {
 fn what_the_circuit_lacks_is_told_and_left_out() {
     let s = site(HOUSE);
     let mut knowledge = Knowledge::embedded().unwrap();
-    knowledge.checks =
-        vec![form("id = \"x\"\neach = \"board\"\nhookup = { quantity = \"volts\", between = [\"{at}.feed.L\", \"soil\"] }")];
+    knowledge.checks = vec![form(
+        "id = \"x\"\neach = \"board\"\nhookup = { quantity = \"volts\", between = [\"{at}.feed.L\", \"soil\"] }",
+    )];
     let network = Network::new(&s, &knowledge).unwrap();
     assert_eq!(ats(&catalogue(&knowledge, &network, &s).unwrap()), ["shed"]);
     let told = misfits(&knowledge, &network, &s).unwrap();
-    assert!(told.len() == 1 && told[0].why.contains("msb.feed.L"), "{told:?}");
+    assert!(
+        told.len() == 1 && told[0].why.contains("msb.feed.L"),
+        "{told:?}"
+    );
     knowledge.checks[0].each = "moon".into();
-    assert!(catalogue(&knowledge, &network, &s).unwrap_err().to_string().contains("moon"));
+    assert!(
+        catalogue(&knowledge, &network, &s)
+            .unwrap_err()
+            .to_string()
+            .contains("moon")
+    );
 }
 
 #[test]
@@ -142,38 +199,67 @@ fn supply_reaches_through_closed_devices_and_from_a_battery() {
     let s = site(HOUSE);
     let off = |devices: &[&str]| {
         let mut setup = open(devices);
-        setup.sources.insert("battery".into(), crate::knowledge::SourceMode::Off);
+        setup
+            .sources
+            .insert("battery".into(), crate::knowledge::SourceMode::Off);
         setup
     };
     assert!(supplied(&off(&[]), &s).contains("s1"));
     assert!(!supplied(&off(&["shed.breaker"]), &s).contains("s1"));
-    assert_eq!(supplied(&off(&["main"]), &s).into_iter().collect::<Vec<_>>(), ["service"]);
+    assert_eq!(
+        supplied(&off(&["main"]), &s)
+            .into_iter()
+            .collect::<Vec<_>>(),
+        ["service"]
+    );
     assert!(supplied(&off(&["service.fuse"]), &s).is_empty());
     assert!(!supplied(&off(&["rcd1"]), &s).contains("c1"));
-    assert!(supplied(&open(&["main"]), &s).contains("c1"), "the battery feeds it");
+    assert!(
+        supplied(&open(&["main"]), &s).contains("c1"),
+        "the battery feeds it"
+    );
     assert!(!supplied(&open(&["main", "c3.breaker"]), &s).contains("c1"));
 }
 
 #[test]
 fn a_cut_circuit_is_dead_beyond_the_cut_only() {
     let s = site(HOUSE);
-    let look = |at: &str| Hookup::Seen { at: at.into(), what: "burnt".into() };
-    let cut = Setup { lift: vec!["c1.p1.split".into()], ..Setup::default() };
+    let look = |at: &str| Hookup::Seen {
+        at: at.into(),
+        what: "burnt".into(),
+    };
+    let cut = Setup {
+        lift: vec!["c1.p1.split".into()],
+        ..Setup::default()
+    };
     assert!(energised(&cut, &look("c1.p1"), &s));
     assert!(!energised(&cut, &look("c1.p2"), &s));
     assert!(!energised(&open(&["c1.breaker"]), &look("kettle"), &s));
-    assert!(energised(&open(&["main"]), &Hookup::Volts { between: ["msb.PE".into(), "soil".into()], meter: None }, &s));
+    assert!(energised(
+        &open(&["main"]),
+        &Hookup::Volts {
+            between: ["msb.PE".into(), "soil".into()],
+            meter: None
+        },
+        &s
+    ));
 }
 
 #[test]
 fn changes_cost_their_minutes_once() {
     let s = site(HOUSE);
     let effort = Knowledge::embedded().unwrap().effort;
-    let dead = Setup { lift: vec!["c1.N@board".into()], ..open(&["main"]) };
+    let dead = Setup {
+        lift: vec!["c1.N@board".into()],
+        ..open(&["main"])
+    };
     let first = transition(&Setup::default(), &dead, true, &s, &effort);
     assert!((first - effort.switch - effort.prove_dead - effort.lift).abs() < 1e-12);
     assert!(transition(&dead, &dead, true, &s, &effort).abs() < 1e-12);
-    let more = Setup { open: vec!["main".into(), "c1.breaker".into()], ..dead.clone() };
+    let more = Setup {
+        open: vec!["main".into(), "c1.breaker".into()],
+        ..dead.clone()
+    };
     let next = transition(&dead, &more, true, &s, &effort);
     assert!((next - effort.switch - effort.prove_dead).abs() < 1e-12);
     let back = transition(&dead, &Setup::default(), false, &s, &effort);
@@ -186,12 +272,17 @@ fn instruments_and_leave_decide_what_is_available() {
     let s = site(HOUSE);
     let knowledge = Knowledge::embedded().unwrap();
     let mut check = made(&s, "id = \"x\"\neach = \"once\"\nhookup = { quantity = \"volts\", between = [\"msb.PE\", \"soil\"] }").remove(0);
-    let kit = |words: &[&str]| -> BTreeSet<String> { words.iter().map(|w| (*w).to_owned()).collect() };
+    let kit =
+        |words: &[&str]| -> BTreeSet<String> { words.iter().map(|w| (*w).to_owned()).collect() };
     assert!(availability(&knowledge, &check, &kit(&["clamp"]), &s).is_ok());
     let why = availability(&knowledge, &check, &kit(&["stake"]), &s).unwrap_err();
     assert!(why.contains("multimeter") && why.contains(" or "), "{why}");
     check.kit = vec!["stake".into(), "low-z-tester".into()];
     assert!(availability(&knowledge, &check, &kit(&["multimeter"]), &s).is_ok());
     check.setup = open(&["service.fuse"]);
-    assert!(availability(&knowledge, &check, &kit(&["multimeter"]), &s).unwrap_err().contains("service.fuse"));
+    assert!(
+        availability(&knowledge, &check, &kit(&["multimeter"]), &s)
+            .unwrap_err()
+            .contains("service.fuse")
+    );
 }

@@ -2,9 +2,9 @@
 
 use std::collections::BTreeMap;
 
+use super::build::{Claim, build, claims};
 use super::error::FaultError;
 use super::fault::Fault;
-use super::build::{Claim, build, claims};
 use super::valid::checked;
 use crate::knowledge::{FaultKind, Knowledge, Manner, Prior};
 use crate::network::Edit;
@@ -16,14 +16,20 @@ use crate::site::Site;
 /// # Errors
 /// An unknown kind or place, a missing or needless `to`, `conductor`, `value` or `position`, two
 /// faults that contradict each other, a kind that does not change the circuit: see [`FaultError`].
-pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec<Edit>, FaultError> {
+pub fn edits(
+    knowledge: &Knowledge,
+    site: &Site,
+    faults: &[Fault],
+) -> Result<Vec<Edit>, FaultError> {
     let mut out = Vec::new();
     let mut claimed: BTreeMap<String, usize> = BTreeMap::new();
     for (index, fault) in faults.iter().enumerate() {
         let kind = kind_of(knowledge, &fault.kind)?;
         let (place, to) = checked(kind, site, fault)?;
         if kind.edits.is_empty() {
-            return Err(FaultError::NotPredictable { kind: kind.kind.clone() });
+            return Err(FaultError::NotPredictable {
+                kind: kind.kind.clone(),
+            });
         }
         let conflict = |other: usize, branch: &str| FaultError::Conflict {
             first: said(&faults[other]),
@@ -56,10 +62,14 @@ pub fn edits(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec
 /// # Errors
 /// [`FaultError::UnknownKind`] with the nearest kinds.
 pub fn kind_of<'a>(knowledge: &'a Knowledge, word: &str) -> Result<&'a FaultKind, FaultError> {
-    knowledge.faults.iter().find(|k| k.kind == word).ok_or_else(|| FaultError::UnknownKind {
-        kind: word.to_owned(),
-        near: nearest(word, knowledge.faults.iter().map(|k| k.kind.as_str()), 3),
-    })
+    knowledge
+        .faults
+        .iter()
+        .find(|k| k.kind == word)
+        .ok_or_else(|| FaultError::UnknownKind {
+            kind: word.to_owned(),
+            near: nearest(word, knowledge.faults.iter().map(|k| k.kind.as_str()), 3),
+        })
 }
 
 /// The distribution of a kind's value, if it has one.

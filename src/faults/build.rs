@@ -23,15 +23,23 @@ pub(crate) fn build(
     at: &Place,
     to: Option<&Place>,
 ) -> Result<Vec<Edit>, FaultError> {
-    let amiss = |why: String| FaultError::Knowledge { kind: kind.kind.clone(), why };
+    let amiss = |why: String| FaultError::Knowledge {
+        kind: kind.kind.clone(),
+        why,
+    };
     let line = conductor(kind, site, fault, at);
     let text = |form: &str| -> Result<String, FaultError> {
         let text = filled(kind, site, fault, at, to, form)?;
         Ok(site.on_line(&text, Some(&line)))
     };
-    let both = |forms: &[String; 2]| -> Result<[String; 2], FaultError> { Ok([text(&forms[0])?, text(&forms[1])?]) };
+    let both = |forms: &[String; 2]| -> Result<[String; 2], FaultError> {
+        Ok([text(&forms[0])?, text(&forms[1])?])
+    };
     let value = || -> Result<f64, FaultError> {
-        let row = kind.value.as_ref().ok_or_else(|| amiss("an edit uses `value`, but there is no [value]".to_owned()))?;
+        let row = kind
+            .value
+            .as_ref()
+            .ok_or_else(|| amiss("an edit uses `value`, but there is no [value]".to_owned()))?;
         Ok(fault.value.unwrap_or_else(|| median(&row.prior)))
     };
     let number = |amount: &Amount| -> Result<f64, FaultError> {
@@ -41,7 +49,9 @@ pub(crate) fn build(
                 "open" => Ok(f64::INFINITY),
                 "value" => value(),
                 "230/value" => Ok(RATED_VOLTS / value()?),
-                other => Err(amiss(format!("the amount `{other}` is none of open, value, 230/value"))),
+                other => Err(amiss(format!(
+                    "the amount `{other}` is none of open, value, 230/value"
+                ))),
             },
         }
     };
@@ -49,25 +59,57 @@ pub(crate) fn build(
         .iter()
         .map(|form| {
             Ok(match form {
-                EditForm::Series { branch, ohms } => Edit::Series { branch: text(branch)?, ohms: number(ohms)? },
-                EditForm::Replace { branch, ohms } => Edit::Replace { branch: text(branch)?, ohms: number(ohms)? },
-                EditForm::Shunt { between, ohms, when } => {
-                    Edit::Shunt { between: both(between)?, ohms: number(ohms)?, when: *when }
-                }
+                EditForm::Series { branch, ohms } => Edit::Series {
+                    branch: text(branch)?,
+                    ohms: number(ohms)?,
+                },
+                EditForm::Replace { branch, ohms } => Edit::Replace {
+                    branch: text(branch)?,
+                    ohms: number(ohms)?,
+                },
+                EditForm::Shunt {
+                    between,
+                    ohms,
+                    when,
+                } => Edit::Shunt {
+                    between: both(between)?,
+                    ohms: number(ohms)?,
+                    when: *when,
+                },
                 EditForm::Capacitor { between, amps } => {
-                    let farads = number(amps)? / (std::f64::consts::TAU * RATED_HERTZ * RATED_VOLTS);
-                    Edit::Capacitor { between: both(between)?, farads }
+                    let farads =
+                        number(amps)? / (std::f64::consts::TAU * RATED_HERTZ * RATED_VOLTS);
+                    Edit::Capacitor {
+                        between: both(between)?,
+                        farads,
+                    }
                 }
-                EditForm::Swap { at, conductors } => Edit::Swap { at: text(at)?, conductors: conductors.clone() },
+                EditForm::Swap { at, conductors } => Edit::Swap {
+                    at: text(at)?,
+                    conductors: conductors.clone(),
+                },
                 EditForm::SwapService {} => Edit::SwapService,
                 EditForm::Move { end, to } => match to {
-                    Amount::Word(to) => Edit::Move { end: text(end)?, to: text(to)? },
-                    Amount::Number(_) => return Err(amiss("a moved end lands on a terminal, not a number".to_owned())),
+                    Amount::Word(to) => Edit::Move {
+                        end: text(end)?,
+                        to: text(to)?,
+                    },
+                    Amount::Number(_) => {
+                        return Err(amiss(
+                            "a moved end lands on a terminal, not a number".to_owned(),
+                        ));
+                    }
                 },
                 EditForm::SourceVolts { volts } => Edit::SourceVolts(number(volts)?),
                 EditForm::NetworkInjection { ohms } => {
-                    let street = site.bonds.iter().find(|bond| bond.street_metal == Some(true));
-                    Edit::NetworkInjection { bond: street.map(|bond| bond.id.clone()), ohms: number(ohms)? }
+                    let street = site
+                        .bonds
+                        .iter()
+                        .find(|bond| bond.street_metal == Some(true));
+                    Edit::NetworkInjection {
+                        bond: street.map(|bond| bond.id.clone()),
+                        ohms: number(ohms)?,
+                    }
                 }
                 EditForm::Element { equipment, ohms } => Edit::Element {
                     equipment: text(equipment)?,
@@ -76,12 +118,23 @@ pub(crate) fn build(
                 },
                 EditForm::Device { id, what, value } => {
                     let rcd = text(id)?;
-                    let amount = || number(value.as_ref().unwrap_or(&Amount::Word("value".to_owned())));
+                    let amount =
+                        || number(value.as_ref().unwrap_or(&Amount::Word("value".to_owned())));
                     match what.as_str() {
-                        "trip-amps" => Edit::TripAmps { rcd, amps: amount()? },
-                        "trip-seconds" => Edit::TripSeconds { rcd, seconds: amount()? },
+                        "trip-amps" => Edit::TripAmps {
+                            rcd,
+                            amps: amount()?,
+                        },
+                        "trip-seconds" => Edit::TripSeconds {
+                            rcd,
+                            seconds: amount()?,
+                        },
                         "dead" => Edit::DeadRcd { rcd },
-                        other => return Err(amiss(format!("a device has no `{other}`: trip-amps, trip-seconds, dead"))),
+                        other => {
+                            return Err(amiss(format!(
+                                "a device has no `{other}`: trip-amps, trip-seconds, dead"
+                            )));
+                        }
                     }
                 }
             })
@@ -102,15 +155,18 @@ pub(crate) enum Claim {
 pub(crate) fn claims(edit: &Edit) -> Vec<(String, Claim)> {
     let one = |key: String, claim| vec![(key, claim)];
     match edit {
-        Edit::Series { branch, .. } | Edit::Replace { branch, .. } => one(same_branch(branch), Claim::Sole),
+        Edit::Series { branch, .. } | Edit::Replace { branch, .. } => {
+            one(same_branch(branch), Claim::Sole)
+        }
         Edit::Shunt { between, .. } | Edit::Capacitor { between, .. } => {
             let mut ends = between.clone();
             ends.sort();
             one(format!("{} to {}", ends[0], ends[1]), Claim::Beside)
         }
-        Edit::Swap { at, conductors } => {
-            conductors.iter().map(|c| (format!("terminal {at}.{c}"), Claim::Sole)).collect()
-        }
+        Edit::Swap { at, conductors } => conductors
+            .iter()
+            .map(|c| (format!("terminal {at}.{c}"), Claim::Sole))
+            .collect(),
         Edit::SwapService => one("service terminals".to_owned(), Claim::Sole),
         Edit::Move { end, .. } => one(same_branch(end), Claim::Sole),
         Edit::SourceVolts(_) => one("supply volts".to_owned(), Claim::Sole),
@@ -119,7 +175,10 @@ pub(crate) fn claims(edit: &Edit) -> Vec<(String, Claim)> {
         Edit::TripAmps { rcd, .. } => one(format!("{rcd} trip current"), Claim::Sole),
         Edit::TripSeconds { rcd, .. } => one(format!("{rcd} trip time"), Claim::Sole),
         Edit::DeadRcd { rcd } => {
-            vec![(format!("{rcd} trip current"), Claim::Sole), (format!("{rcd} trip time"), Claim::Sole)]
+            vec![
+                (format!("{rcd} trip current"), Claim::Sole),
+                (format!("{rcd} trip time"), Claim::Sole),
+            ]
         }
     }
 }

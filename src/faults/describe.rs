@@ -13,11 +13,24 @@ use crate::site::Site;
 ///
 /// # Errors
 /// As [`super::edits`], contradictions apart.
-pub fn describe(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<String, FaultError> {
+pub fn describe(
+    knowledge: &Knowledge,
+    site: &Site,
+    faults: &[Fault],
+) -> Result<String, FaultError> {
     each(knowledge, site, faults, |kind| {
-        let located = ["{at", "{circuit", "{board", "{point"].iter().any(|name| kind.name.contains(name));
-        let nowhere = kind.at.iter().all(|class| class == "service" || class == "network");
-        if located || nowhere { kind.name.clone() } else { format!("{} at {{at-name}}", kind.name) }
+        let located = ["{at", "{circuit", "{board", "{point"]
+            .iter()
+            .any(|name| kind.name.contains(name));
+        let nowhere = kind
+            .at
+            .iter()
+            .all(|class| class == "service" || class == "network");
+        if located || nowhere {
+            kind.name.clone()
+        } else {
+            format!("{} at {{at-name}}", kind.name)
+        }
     })
 }
 
@@ -25,7 +38,11 @@ pub fn describe(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<
 ///
 /// # Errors
 /// As [`describe`].
-pub fn repair_text(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<String, FaultError> {
+pub fn repair_text(
+    knowledge: &Knowledge,
+    site: &Site,
+    faults: &[Fault],
+) -> Result<String, FaultError> {
     each(knowledge, site, faults, |kind| kind.repair.text.clone())
 }
 

@@ -104,7 +104,10 @@ pub fn enumerate(knowledge: &Knowledge, site: &Site) -> Result<Space, FaultError
             });
         }
     }
-    Ok(Space { singles, excluded: exclusions(&claimed) })
+    Ok(Space {
+        singles,
+        excluded: exclusions(&claimed),
+    })
 }
 
 /// The id of a single fault, without its value.
@@ -122,7 +125,11 @@ pub fn id_of(fault: &Fault) -> String {
 }
 
 /// Every fault of a kind, with its share of the presence.
-fn faults_of(kind: &FaultKind, equipment: &[EquipmentRow], site: &Site) -> Result<Vec<(Fault, f64)>, FaultError> {
+fn faults_of(
+    kind: &FaultKind,
+    equipment: &[EquipmentRow],
+    site: &Site,
+) -> Result<Vec<(Fault, f64)>, FaultError> {
     let mut at = Vec::new();
     for place in kind.at.iter().flat_map(|class| places(site, class)) {
         let mut fits = true;
@@ -142,18 +149,34 @@ fn faults_of(kind: &FaultKind, equipment: &[EquipmentRow], site: &Site) -> Resul
         Some("point") => to_other_circuits(kind, site, &at),
         Some(class) => {
             let why = format!("`to` cannot be `{class}`: bar or point");
-            return Err(FaultError::Knowledge { kind: kind.kind.clone(), why });
+            return Err(FaultError::Knowledge {
+                kind: kind.kind.clone(),
+                why,
+            });
         }
     };
     let mut out = Vec::new();
     for (place, to, share) in ends {
         let choices = conductors(kind, site, &place);
-        let many: Vec<Option<String>> =
-            if choices.is_empty() { vec![None] } else { choices.into_iter().map(Some).collect() };
+        let many: Vec<Option<String>> = if choices.is_empty() {
+            vec![None]
+        } else {
+            choices.into_iter().map(Some).collect()
+        };
         let presence = kind.presence * share / many.len() as f64;
         for conductor in many {
             let (kind, at) = (kind.kind.clone(), place.id.clone());
-            out.push((Fault { kind, at, to: to.clone(), value: None, conductor, position: None }, presence));
+            out.push((
+                Fault {
+                    kind,
+                    at,
+                    to: to.clone(),
+                    value: None,
+                    conductor,
+                    position: None,
+                },
+                presence,
+            ));
         }
     }
     Ok(out)
@@ -166,16 +189,27 @@ fn to_bars(site: &Site, at: &[Place]) -> Vec<End> {
     let mut out = Vec::new();
     for place in at {
         let own = format!("{}.N", place.bus(site));
-        let others: Vec<Place> = bars(site, place.board(site)).into_iter().filter(|bar| bar.id != own).collect();
+        let others: Vec<Place> = bars(site, place.board(site))
+            .into_iter()
+            .filter(|bar| bar.id != own)
+            .collect();
         let share = 1.0 / others.len().max(1) as f64;
-        out.extend(others.into_iter().map(|bar| (place.clone(), Some(bar.id), share)));
+        out.extend(
+            others
+                .into_iter()
+                .map(|bar| (place.clone(), Some(bar.id), share)),
+        );
     }
     out
 }
 
 /// One representative pair of points for each pair of circuits: the two nearest in cable length.
 fn to_other_circuits(kind: &FaultKind, site: &Site, at: &[Place]) -> Vec<End> {
-    let of = |b: usize, c: usize| -> Vec<&Place> { at.iter().filter(|p| p.circuit(site) == Some((b, c))).collect() };
+    let of = |b: usize, c: usize| -> Vec<&Place> {
+        at.iter()
+            .filter(|p| p.circuit(site) == Some((b, c)))
+            .collect()
+    };
     let other_bar = kind.only.iter().any(|word| word == "other-bar");
     let mut nearest = Vec::new();
     let mut partners: BTreeMap<(usize, usize), usize> = BTreeMap::new();
@@ -185,7 +219,9 @@ fn to_other_circuits(kind: &FaultKind, site: &Site, at: &[Place]) -> Vec<End> {
         for p in of(b, c) {
             for q in of(b, d) {
                 let apart = (metres(p) - metres(q)).abs();
-                if (!other_bar || p.bus(site) != q.bus(site)) && best.is_none_or(|(least, ..)| apart < least) {
+                if (!other_bar || p.bus(site) != q.bus(site))
+                    && best.is_none_or(|(least, ..)| apart < least)
+                {
                     best = Some((apart, p, q));
                 }
             }
@@ -196,9 +232,14 @@ fn to_other_circuits(kind: &FaultKind, site: &Site, at: &[Place]) -> Vec<End> {
             *partners.entry((b, d)).or_default() += 1;
         }
     }
-    let share = |(b, c): (usize, usize)| of(b, c).len() as f64 / partners.get(&(b, c)).map_or(1.0, |n| *n as f64);
+    let share = |(b, c): (usize, usize)| {
+        of(b, c).len() as f64 / partners.get(&(b, c)).map_or(1.0, |n| *n as f64)
+    };
     // A fault that treats both ends alike is the same from either.
-    let alike = kind.edits.iter().all(|e| matches!(e, EditForm::Shunt { .. }));
+    let alike = kind
+        .edits
+        .iter()
+        .all(|e| matches!(e, EditForm::Shunt { .. }));
     let mut out = Vec::new();
     for (c, p, d, q) in nearest {
         if alike {

@@ -74,5 +74,9 @@ impl FaultError {
 }
 
 fn nearest(names: &[String]) -> String {
-    if names.is_empty() { String::new() } else { format!("; nearest: {}", names.join(", ")) }
+    if names.is_empty() {
+        String::new()
+    } else {
+        format!("; nearest: {}", names.join(", "))
+    }
 }

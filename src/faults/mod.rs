@@ -15,8 +15,8 @@ pub use describe::{describe, repair_text};
 pub use enumerate::{Hypothesis, NOTHING_WRONG, Space, UNLISTED, enumerate};
 pub use error::FaultError;
 pub use fault::Fault;
-pub use telltale::{Telltale, looks, outcomes};
 pub use pairs::{PairList, best_first};
+pub use telltale::{Telltale, looks, outcomes};
 
 #[cfg(test)]
 mod tests;

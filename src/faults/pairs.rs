@@ -24,7 +24,12 @@ pub struct PairList {
 /// `mass(i, j)` weighs a pair; [`Space::pair_prior`] is the plain one, and a complaint multiplies
 /// it by how well it explains the call. Impossible pairs (see [`Space::excluded`]) count nothing.
 /// Work is quadratic in the number of singles with a small constant; memory is that of the list.
-pub fn best_first(space: &Space, mass: impl Fn(usize, usize) -> f64, fraction: f64, at_most: usize) -> PairList {
+pub fn best_first(
+    space: &Space,
+    mass: impl Fn(usize, usize) -> f64,
+    fraction: f64,
+    at_most: usize,
+) -> PairList {
     let n = space.singles.len();
     let each = |visit: &mut dyn FnMut(usize, usize, f64)| {
         for i in 0..n {
@@ -71,7 +76,11 @@ pub fn best_first(space: &Space, mass: impl Fn(usize, usize) -> f64, fraction: f
         take += 1;
     }
     pairs.truncate(take);
-    PairList { pairs, kept, dropped: (total - kept).max(0.0) }
+    PairList {
+        pairs,
+        kept,
+        dropped: (total - kept).max(0.0),
+    }
 }
 
 /// Power of two below a positive finite number.
@@ -87,7 +96,11 @@ impl Space {
 
     /// Whether two singles can be there together.
     pub fn compatible(&self, i: usize, j: usize) -> bool {
-        i != j && !self.excluded.get(&i.min(j)).is_some_and(|set| set.contains(&i.max(j)))
+        i != j
+            && !self
+                .excluded
+                .get(&i.min(j))
+                .is_some_and(|set| set.contains(&i.max(j)))
     }
 
     /// Two singles as one hypothesis.
@@ -95,13 +108,23 @@ impl Space {
         let (a, b) = (&self.singles[i], &self.singles[j]);
         let mut groups = BTreeSet::from([a.group.as_str(), b.group.as_str()]);
         if a.harmless != b.harmless {
-            groups.remove(if a.harmless { a.group.as_str() } else { b.group.as_str() });
+            groups.remove(if a.harmless {
+                a.group.as_str()
+            } else {
+                b.group.as_str()
+            });
         }
         // The order in which people act: the network first, then whatever must be left off.
-        let action = ["call-network", "isolate", "repair", "refer", "nothing-found"]
-            .into_iter()
-            .find(|word| a.action == *word || b.action == *word)
-            .unwrap_or("repair");
+        let action = [
+            "call-network",
+            "isolate",
+            "repair",
+            "refer",
+            "nothing-found",
+        ]
+        .into_iter()
+        .find(|word| a.action == *word || b.action == *word)
+        .unwrap_or("repair");
         Hypothesis {
             id: format!("{} + {}", a.id, b.id),
             faults: a.faults.iter().chain(&b.faults).cloned().collect(),
@@ -109,7 +132,11 @@ impl Space {
             places: a.places.iter().chain(&b.places).cloned().collect(),
             group: groups.into_iter().collect::<Vec<_>>().join(" + "),
             action: action.to_owned(),
-            minutes: if a.group == b.group { a.minutes.max(b.minutes) } else { a.minutes + b.minutes },
+            minutes: if a.group == b.group {
+                a.minutes.max(b.minutes)
+            } else {
+                a.minutes + b.minutes
+            },
             invasive: a.invasive || b.invasive,
             dangerous: a.dangerous || b.dangerous,
             harmless: a.harmless && b.harmless,

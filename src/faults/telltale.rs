@@ -24,14 +24,23 @@ pub struct Telltale {
 ///
 /// # Errors
 /// An unknown kind or place; a template that fits nothing here is left out.
-pub fn looks(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec<Telltale>, FaultError> {
+pub fn looks(
+    knowledge: &Knowledge,
+    site: &Site,
+    faults: &[Fault],
+) -> Result<Vec<Telltale>, FaultError> {
     let mut out = Vec::new();
     for fault in faults {
         let kind = kind_of(knowledge, &fault.kind)?;
         let (at, to) = checked(kind, site, fault)?;
         for look in &kind.looks {
             if let Ok(place) = filled(kind, site, fault, &at, to.as_ref(), &look.at) {
-                out.push(Telltale { at: place, what: look.what.clone(), word: "yes".to_owned(), p: look.p });
+                out.push(Telltale {
+                    at: place,
+                    what: look.what.clone(),
+                    word: "yes".to_owned(),
+                    p: look.p,
+                });
             }
         }
     }
@@ -42,7 +51,11 @@ pub fn looks(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec
 ///
 /// # Errors
 /// As [`looks`].
-pub fn outcomes(knowledge: &Knowledge, site: &Site, faults: &[Fault]) -> Result<Vec<Telltale>, FaultError> {
+pub fn outcomes(
+    knowledge: &Knowledge,
+    site: &Site,
+    faults: &[Fault],
+) -> Result<Vec<Telltale>, FaultError> {
     let mut out = Vec::new();
     for fault in faults {
         let kind = kind_of(knowledge, &fault.kind)?;

@@ -89,7 +89,13 @@ fn knowledge() -> Knowledge {
     ];
     knowledge.faults = rows
         .iter()
-        .map(|row| kind(&if row.contains("\"value\"") { format!("{row}\n{OHMS}") } else { (*row).to_owned() }))
+        .map(|row| {
+            kind(&if row.contains("\"value\"") {
+                format!("{row}\n{OHMS}")
+            } else {
+                (*row).to_owned()
+            })
+        })
         .collect();
     knowledge
 }
@@ -99,25 +105,50 @@ fn site(text: &str) -> Site {
 }
 
 fn fault(kind: &str, at: &str) -> Fault {
-    Fault { kind: kind.into(), at: at.into(), to: None, value: None, conductor: None, position: None }
+    Fault {
+        kind: kind.into(),
+        at: at.into(),
+        to: None,
+        value: None,
+        conductor: None,
+        position: None,
+    }
 }
 
 fn series(branch: &str, ohms: f64) -> Edit {
-    Edit::Series { branch: branch.into(), ohms }
+    Edit::Series {
+        branch: branch.into(),
+        ohms,
+    }
 }
 
 fn code(faults: &[Fault]) -> &'static str {
-    edits(&knowledge(), &site(HOUSE), faults).unwrap_err().code()
+    edits(&knowledge(), &site(HOUSE), faults)
+        .unwrap_err()
+        .code()
 }
 
 #[test]
 fn fills_places_values_and_conductors() {
     let (k, s) = (knowledge(), site(HOUSE));
-    let neutral = Fault { conductor: Some("N".into()), value: Some(7.0), ..fault("joint", "c1.p2") };
-    let made = edits(&k, &s, &[fault("pe-open", "c1"), neutral, fault("joint", "c2.p1")]).unwrap();
+    let neutral = Fault {
+        conductor: Some("N".into()),
+        value: Some(7.0),
+        ..fault("joint", "c1.p2")
+    };
+    let made = edits(
+        &k,
+        &s,
+        &[fault("pe-open", "c1"), neutral, fault("joint", "c2.p1")],
+    )
+    .unwrap();
     assert_eq!(
         made,
-        vec![series("into c1.PE", f64::INFINITY), series("into c1.p2.N", 7.0), series("into c2.p1.L", 3.0)]
+        vec![
+            series("into c1.PE", f64::INFINITY),
+            series("into c1.p2.N", 7.0),
+            series("into c2.p1.L", 3.0)
+        ]
     );
 }
 
@@ -126,14 +157,28 @@ fn three_phases_take_the_line_that_is_meant() {
     let text = HOUSE
         .replace(r#""phases": 1"#, r#""phases": 3"#)
         .replace(r#""poles": 1}"#, r#""poles": 3}"#)
-        .replace(r#""name": "hot water","#, r#""name": "hot water", "phase": "L1L2L3","#);
+        .replace(
+            r#""name": "hot water","#,
+            r#""name": "hot water", "phase": "L1L2L3","#,
+        );
     let (k, s) = (knowledge(), site(&text));
-    let second = Fault { conductor: Some("L2".into()), ..fault("joint", "c3.p1") };
+    let second = Fault {
+        conductor: Some("L2".into()),
+        ..fault("joint", "c3.p1")
+    };
     let made = edits(&k, &s, &[fault("leak", "c3.p1"), second]).unwrap();
-    let shunt = Edit::Shunt { between: ["c3.p1.L1".into(), "c3.p1.PE".into()], ohms: 3.0, when: None };
+    let shunt = Edit::Shunt {
+        between: ["c3.p1.L1".into(), "c3.p1.PE".into()],
+        ohms: 3.0,
+        when: None,
+    };
     assert_eq!(made, vec![shunt, series("into c3.p1.L2", 3.0)]);
     let space = enumerate(&k, &s).unwrap();
-    let joints = space.singles.iter().filter(|h| h.id.starts_with("joint@c3.p1")).count();
+    let joints = space
+        .singles
+        .iter()
+        .filter(|h| h.id.starts_with("joint@c3.p1"))
+        .count();
     assert_eq!(joints, 4, "L1, L2, L3 and N");
 }
 
@@ -142,13 +187,40 @@ fn refuses_with_the_codes_of_the_contract() {
     assert_eq!(code(&[fault("pe-opn", "c1.p1")]), "unknown-word");
     assert_eq!(code(&[fault("pe-open", "kettle")]), "unknown-place");
     assert_eq!(code(&[fault("wrong-bar", "c1")]), "bad-request");
-    assert_eq!(code(&[Fault { to: Some("shed.N".into()), ..fault("wrong-bar", "c1") }]), "unknown-place");
-    assert_eq!(code(&[Fault { value: Some(1.0), ..fault("pe-open", "c1.p1") }]), "bad-request");
-    assert_eq!(code(&[Fault { value: Some(-1.0), ..fault("leak", "c1.p1") }]), "bad-request");
-    assert_eq!(code(&[fault("pe-open", "c1.p1"), fault("pe-poor", "c1.p1")]), "conflict");
-    assert_eq!(code(&[fault("leak", "c1.p1"), fault("leak", "c1.p1")]), "conflict");
+    assert_eq!(
+        code(&[Fault {
+            to: Some("shed.N".into()),
+            ..fault("wrong-bar", "c1")
+        }]),
+        "unknown-place"
+    );
+    assert_eq!(
+        code(&[Fault {
+            value: Some(1.0),
+            ..fault("pe-open", "c1.p1")
+        }]),
+        "bad-request"
+    );
+    assert_eq!(
+        code(&[Fault {
+            value: Some(-1.0),
+            ..fault("leak", "c1.p1")
+        }]),
+        "bad-request"
+    );
+    assert_eq!(
+        code(&[fault("pe-open", "c1.p1"), fault("pe-poor", "c1.p1")]),
+        "conflict"
+    );
+    assert_eq!(
+        code(&[fault("leak", "c1.p1"), fault("leak", "c1.p1")]),
+        "conflict"
+    );
     assert_eq!(code(&[fault("unseen", "rcd1")]), "not-predictable");
-    let bars = ["msb.N", "msb.rcd2.N"].map(|bar| Fault { to: Some(bar.into()), ..fault("wrong-bar", "c1") });
+    let bars = ["msb.N", "msb.rcd2.N"].map(|bar| Fault {
+        to: Some(bar.into()),
+        ..fault("wrong-bar", "c1")
+    });
     assert_eq!(code(&bars), "conflict");
 }
 
@@ -162,15 +234,37 @@ fn nearest_words_are_named() {
 fn space_has_every_place_once_and_bars_but_ones_own() {
     let space = enumerate(&knowledge(), &site(HOUSE)).unwrap();
     let of = |kind: &str| -> Vec<&str> {
-        space.singles.iter().filter(|h| h.faults[0].kind == kind).map(|h| h.id.as_str()).collect()
+        space
+            .singles
+            .iter()
+            .filter(|h| h.faults[0].kind == kind)
+            .map(|h| h.id.as_str())
+            .collect()
     };
     assert_eq!(of("pe-open").len(), 5 + 4);
     assert_eq!(of("joint").len(), 2 * 5);
     let c1 = ["wrong-bar@c1>msb.N", "wrong-bar@c1>msb.rcd2.N"];
-    assert_eq!(of("wrong-bar").iter().filter(|id| id.contains("@c1>")).copied().collect::<Vec<_>>(), c1);
-    assert!(!of("wrong-bar").iter().any(|id| id.contains("@s1")), "the shed has one bar");
+    assert_eq!(
+        of("wrong-bar")
+            .iter()
+            .filter(|id| id.contains("@c1>"))
+            .copied()
+            .collect::<Vec<_>>(),
+        c1
+    );
+    assert!(
+        !of("wrong-bar").iter().any(|id| id.contains("@s1")),
+        "the shed has one bar"
+    );
     // The pair nearest in length: fridge recess 14 m, bed 15 m.
-    assert_eq!(of("bridged"), ["bridged@c1.p2>c2.p1", "bridged@c1.p2>c3.p1", "bridged@c2.p1>c3.p1"]);
+    assert_eq!(
+        of("bridged"),
+        [
+            "bridged@c1.p2>c2.p1",
+            "bridged@c1.p2>c3.p1",
+            "bridged@c2.p1>c3.p1"
+        ]
+    );
     let ids: std::collections::BTreeSet<_> = space.singles.iter().map(|h| &h.id).collect();
     assert_eq!(ids.len(), space.singles.len());
 }
@@ -178,10 +272,23 @@ fn space_has_every_place_once_and_bars_but_ones_own() {
 #[test]
 fn choices_share_the_presence_of_a_place() {
     let space = enumerate(&knowledge(), &site(HOUSE)).unwrap();
-    let total: f64 = space.singles.iter().filter(|h| h.faults[0].kind == "joint").map(|h| h.prior).sum();
+    let total: f64 = space
+        .singles
+        .iter()
+        .filter(|h| h.faults[0].kind == "joint")
+        .map(|h| h.prior)
+        .sum();
     assert!((total - 5.0 * 0.02 / 0.99).abs() < 1e-12, "{total}");
-    let bridged: f64 = space.singles.iter().filter(|h| h.faults[0].kind == "bridged").map(|h| h.prior).sum();
-    assert!((bridged - 4.0 * 0.001).abs() < 1e-5, "four points of the main board's circuits: {bridged}");
+    let bridged: f64 = space
+        .singles
+        .iter()
+        .filter(|h| h.faults[0].kind == "bridged")
+        .map(|h| h.prior)
+        .sum();
+    assert!(
+        (bridged - 4.0 * 0.001).abs() < 1e-5,
+        "four points of the main board's circuits: {bridged}"
+    );
 }
 
 #[test]
@@ -191,7 +298,10 @@ fn every_single_has_a_circuit() {
     for h in enumerate(&k, &s).unwrap().singles {
         match edits(&k, &s, &h.faults) {
             Ok(made) => drop(network.edited(&made).unwrap()),
-            Err(error) => assert_eq!((error.code(), h.faults[0].kind.as_str()), ("not-predictable", "unseen")),
+            Err(error) => assert_eq!(
+                (error.code(), h.faults[0].kind.as_str()),
+                ("not-predictable", "unseen")
+            ),
         }
     }
 }
@@ -208,7 +318,11 @@ fn a_word_that_is_no_condition_is_named() {
 fn pairs_hold_the_mass_and_leave_out_contradictions() {
     let space = enumerate(&knowledge(), &site(HOUSE)).unwrap();
     let index = |id: &str| space.singles.iter().position(|h| h.id == id).unwrap();
-    let (open, poor, leak) = (index("pe-open@c1.p1"), index("pe-poor@c1.p1"), index("leak@c1.p1"));
+    let (open, poor, leak) = (
+        index("pe-open@c1.p1"),
+        index("pe-poor@c1.p1"),
+        index("leak@c1.p1"),
+    );
     assert!(!space.compatible(open, poor) && space.compatible(open, leak));
     let mass = |i, j| space.pair_prior(i, j);
     let all = best_first(&space, mass, 1.0, usize::MAX);
@@ -218,7 +332,11 @@ fn pairs_hold_the_mass_and_leave_out_contradictions() {
     assert!((half.kept + half.dropped - all.kept).abs() < 1e-12 * all.kept);
     assert!(half.kept >= 0.5 * all.kept);
     assert!(all.pairs.windows(2).all(|w| w[0].2 >= w[1].2));
-    assert!(all.pairs.iter().all(|&(i, j, _)| i < j && space.compatible(i, j)));
+    assert!(
+        all.pairs
+            .iter()
+            .all(|&(i, j, _)| i < j && space.compatible(i, j))
+    );
     assert_eq!(best_first(&space, mass, 1.0, 7).pairs, all.pairs[..7]);
 }
 
@@ -240,5 +358,8 @@ fn every_pair_that_is_kept_has_a_circuit() {
 fn says_it_in_the_words_of_the_site() {
     let (k, s) = (knowledge(), site(HOUSE));
     let said = describe(&k, &s, &[fault("pe-open", "c1.p1"), fault("leak", "c2.p1")]).unwrap();
-    assert_eq!(said, "earth open at bench (kitchen sockets), and leak at bed (bedroom sockets)");
+    assert_eq!(
+        said,
+        "earth open at bench (kitchen sockets), and leak at bed (bedroom sockets)"
+    );
 }

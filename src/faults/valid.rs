@@ -10,13 +10,23 @@ use crate::site::{Phase, Place, Site, place};
 ///
 /// # Errors
 /// [`FaultError::UnknownPlace`] and [`FaultError::Bad`].
-pub(crate) fn checked(kind: &FaultKind, site: &Site, fault: &Fault) -> Result<(Place, Option<Place>), FaultError> {
-    let bad = |why: String| FaultError::Bad { kind: kind.kind.clone(), at: fault.at.clone(), why };
+pub(crate) fn checked(
+    kind: &FaultKind,
+    site: &Site,
+    fault: &Fault,
+) -> Result<(Place, Option<Place>), FaultError> {
+    let bad = |why: String| FaultError::Bad {
+        kind: kind.kind.clone(),
+        at: fault.at.clone(),
+        why,
+    };
     let at = find(kind, site, &kind.at, &fault.at)?;
     let to = match (&kind.to, &fault.to) {
         (None, None) => None,
         (None, Some(_)) => return Err(bad("it has no `to`: leave it out".to_owned())),
-        (Some(class), None) => return Err(bad(format!("`to` is missing: name the {class} it goes to"))),
+        (Some(class), None) => {
+            return Err(bad(format!("`to` is missing: name the {class} it goes to")));
+        }
         (Some(class), Some(to)) if class == "bar" => {
             let bars = bars(site, at.board(site));
             let bar = bars.iter().find(|bar| bar.id == *to).cloned();
@@ -37,8 +47,12 @@ pub(crate) fn checked(kind: &FaultKind, site: &Site, fault: &Fault) -> Result<(P
     };
     if let Some(word) = &fault.conductor {
         let choices = conductors(kind, site, &at);
-        let line_of_three = site.phase_of(&at.id) == Some(Phase::Three) && ["L", "L1", "L2", "L3"].contains(&word.as_str());
-        if !choices.contains(word) && !(line_of_three && (choices.is_empty() || choices.iter().any(|c| c.starts_with('L')))) {
+        let line_of_three = site.phase_of(&at.id) == Some(Phase::Three)
+            && ["L", "L1", "L2", "L3"].contains(&word.as_str());
+        if !choices.contains(word)
+            && !(line_of_three
+                && (choices.is_empty() || choices.iter().any(|c| c.starts_with('L'))))
+        {
             return Err(bad(if choices.is_empty() {
                 "it has no `conductor`: leave it out".to_owned()
             } else {
@@ -51,7 +65,9 @@ pub(crate) fn checked(kind: &FaultKind, site: &Site, fault: &Fault) -> Result<(P
             return Err(bad("it has no `value`: leave it out".to_owned()));
         }
         if !value.is_finite() || value < 0.0 {
-            return Err(bad(format!("`value` {value} is not a number of zero or more")));
+            return Err(bad(format!(
+                "`value` {value} is not a number of zero or more"
+            )));
         }
     }
     if let Some(position) = fault.position {
@@ -59,7 +75,9 @@ pub(crate) fn checked(kind: &FaultKind, site: &Site, fault: &Fault) -> Result<(P
             return Err(bad("it has no `position`: leave it out".to_owned()));
         }
         if !(0.0..=1.0).contains(&position) {
-            return Err(bad(format!("`position` {position} is not within 0 (line end) to 1")));
+            return Err(bad(format!(
+                "`position` {position} is not within 0 (line end) to 1"
+            )));
         }
     }
     Ok((at, to))
@@ -67,7 +85,10 @@ pub(crate) fn checked(kind: &FaultKind, site: &Site, fault: &Fault) -> Result<(P
 
 fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<Place, FaultError> {
     place::find(site, classes, id).ok_or_else(|| {
-        let fit: Vec<Place> = classes.iter().flat_map(|c| place::places(site, c)).collect();
+        let fit: Vec<Place> = classes
+            .iter()
+            .flat_map(|c| place::places(site, c))
+            .collect();
         FaultError::UnknownPlace {
             kind: kind.kind.clone(),
             place: id.to_owned(),
@@ -79,10 +100,20 @@ fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<P
 
 /// The neutral bars of a board, `msb.N` and `msb.rcd1.N`, as places of their terminals.
 pub(crate) fn bars(site: &Site, board: usize) -> Vec<Place> {
-    let Some(home) = site.boards.get(board) else { return Vec::new() };
-    let bar = |id: String| Place { id, spot: crate::site::Spot::Board(board) };
-    let rcds = home.rcds.iter().map(|r| bar(format!("{}.{}.N", home.id, r.id)));
-    std::iter::once(bar(format!("{}.N", home.id))).chain(rcds).collect()
+    let Some(home) = site.boards.get(board) else {
+        return Vec::new();
+    };
+    let bar = |id: String| Place {
+        id,
+        spot: crate::site::Spot::Board(board),
+    };
+    let rcds = home
+        .rcds
+        .iter()
+        .map(|r| bar(format!("{}.{}.N", home.id, r.id)));
+    std::iter::once(bar(format!("{}.N", home.id)))
+        .chain(rcds)
+        .collect()
 }
 
 /// The conductors that a kind may name at a place: of a line on a three-phase part each one.
@@ -136,7 +167,10 @@ pub(crate) fn filled(
                 near: Vec::new(),
             }
         } else {
-            FaultError::Knowledge { kind: kind.kind.clone(), why: e.to_string() }
+            FaultError::Knowledge {
+                kind: kind.kind.clone(),
+                why: e.to_string(),
+            }
         }
     })
 }
@@ -150,5 +184,9 @@ pub(crate) fn conductor(kind: &FaultKind, site: &Site, fault: &Fault, at: &Place
 }
 
 fn to_name(site: &Site, to: &Place) -> String {
-    if to.id.ends_with(".N") { format!("the bar {}", to.id) } else { to.name(site) }
+    if to.id.ends_with(".N") {
+        format!("the bar {}", to.id)
+    } else {
+        to.name(site)
+    }
 }

@@ -253,7 +253,11 @@ impl Circuit {
         }
         for d in &self.devices {
             match &d.kind {
-                DeviceKind::Rcd { trip_override, seconds_override, .. } => {
+                DeviceKind::Rcd {
+                    trip_override,
+                    seconds_override,
+                    ..
+                } => {
                     out.push(trip_override.unwrap_or(-1.0));
                     out.push(seconds_override.unwrap_or(-1.0));
                 }
@@ -279,7 +283,12 @@ impl Circuit {
                 },
             }
         } else if let Some(d) = self.devices.get_mut((index - branches) / 2) {
-            if let DeviceKind::Rcd { trip_override, seconds_override, .. } = &mut d.kind {
+            if let DeviceKind::Rcd {
+                trip_override,
+                seconds_override,
+                ..
+            } = &mut d.kind
+            {
                 if (index - branches) % 2 == 0 {
                     *trip_override = Some(value);
                 } else {

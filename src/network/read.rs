@@ -414,7 +414,9 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
                 return Prediction {
                     outcome: Outcome::Word(Word::NoTrip),
                     unit,
-                    tripped: Vec::new(), enclosed: 0.0 };
+                    tripped: Vec::new(),
+                    enclosed: 0.0,
+                };
             };
             let amps = multiple * rated;
             let trip = match tester(solver, *rcd, *between, &sw, &p) {
@@ -484,7 +486,9 @@ pub fn read(solver: &dyn Solver, probe: &Probe, state: &Switching, protection: b
     Prediction {
         outcome,
         unit,
-        tripped, enclosed }
+        tripped,
+        enclosed,
+    }
 }
 
 /// An RCD tester at its place: what the core sees of its current.

@@ -19,7 +19,9 @@ pub enum BodyError {
         percentile: f64,
     },
     /// Columns that do not belong together.
-    #[error("body table `{table}`: volts must rise, ohms be positive, and both lists be equally long")]
+    #[error(
+        "body table `{table}`: volts must rise, ohms be positive, and both lists be equally long"
+    )]
     Bad {
         /// Table.
         table: String,
@@ -50,15 +52,24 @@ impl Body {
         let row = rows
             .iter()
             .find(|r| r.table == table && r.percentile == percentile)
-            .ok_or_else(|| BodyError::Missing { table: table.to_owned(), percentile })?;
-        Self::new(&row.volts, &row.ohms).ok_or_else(|| BodyError::Bad { table: table.to_owned() })
+            .ok_or_else(|| BodyError::Missing {
+                table: table.to_owned(),
+                percentile,
+            })?;
+        Self::new(&row.volts, &row.ohms).ok_or_else(|| BodyError::Bad {
+            table: table.to_owned(),
+        })
     }
 
     /// From two columns; nothing where they do not fit.
     pub fn new(volts: &[f64], ohms: &[f64]) -> Option<Self> {
         let rising = volts.windows(2).all(|w| matches!(w, [a, b] if a < b));
-        let sound = !volts.is_empty() && volts.len() == ohms.len() && ohms.iter().all(|z| *z > 0.0 && z.is_finite());
-        (rising && sound).then(|| Self { steps: volts.iter().copied().zip(ohms.iter().copied()).collect() })
+        let sound = !volts.is_empty()
+            && volts.len() == ohms.len()
+            && ohms.iter().all(|z| *z > 0.0 && z.is_finite());
+        (rising && sound).then(|| Self {
+            steps: volts.iter().copied().zip(ohms.iter().copied()).collect(),
+        })
     }
 
     /// Ω at a touch voltage.
@@ -85,6 +96,9 @@ impl Body {
                 high = middle;
             }
         }
-        Touch { volts: low, amps: low / self.ohms(low) }
+        Touch {
+            volts: low,
+            amps: low / self.ohms(low),
+        }
     }
 }

@@ -100,27 +100,43 @@ impl<'a> Gate<'a> {
 
     /// Clears, holds or refuses a check as things stand. Without `hazards` the rules alone judge: for lists
     /// that nobody acts on, never for advice.
-    pub fn clear(&self, check: &Check, state: &State, mut hazards: Option<&mut Hazards<'_>>) -> Verdict {
+    pub fn clear(
+        &self,
+        check: &Check,
+        state: &State,
+        mut hazards: Option<&mut Hazards<'_>>,
+    ) -> Verdict {
         if let Some(refusal) = rules::refusal(&self.ground, state, check) {
             return Verdict::Refused(refusal);
         }
         let mut points = hold_points(&self.ground, state, check);
-        let assessment = hazards.as_deref_mut().map(|h| h.assess(&self.ground, check)).unwrap_or_default();
-        let live = hazards.is_some_and(|h| h.standing_probability(&self.ground) > self.ground.numbers.standing);
+        let assessment = hazards
+            .as_deref_mut()
+            .map(|h| h.assess(&self.ground, check))
+            .unwrap_or_default();
+        let live = hazards
+            .is_some_and(|h| h.standing_probability(&self.ground) > self.ground.numbers.standing);
         if live && !points.iter().any(|p| p.stage == Stage::MakeSafe) {
             points.insert(0, make_safe(state));
         }
         if let Some(refusal) = self.weigh(check, state, &assessment, &mut points) {
             return Verdict::Refused(refusal);
         }
-        let stuck: Vec<HoldPoint> =
-            points.iter().filter(|p| !p.done && state.cannot(&p.point).is_some()).cloned().collect();
+        let stuck: Vec<HoldPoint> = points
+            .iter()
+            .filter(|p| !p.done && state.cannot(&p.point).is_some())
+            .cloned()
+            .collect();
         if let Some(why) = stuck.first().and_then(|p| state.cannot(&p.point)) {
             let why = why.to_owned();
             return Verdict::Held { points: stuck, why };
         }
         let hazard = self.hazard_text(check, &assessment);
-        Verdict::Cleared(Box::new(Cleared { inner: check.clone(), points, hazard }))
+        Verdict::Cleared(Box::new(Cleared {
+            inner: check.clone(),
+            points,
+            hazard,
+        }))
     }
 
     /// Whether a reading of the check may be taken in now: cleared anew, every hold point done.
@@ -138,15 +154,26 @@ impl<'a> Gate<'a> {
             Verdict::Held { why, .. } => Err(ReadingStop::Held(why)),
             Verdict::Cleared(cleared) => {
                 let open: Vec<HoldPoint> = cleared.open_points().cloned().collect();
-                if open.is_empty() { Ok(*cleared) } else { Err(ReadingStop::Open(open)) }
+                if open.is_empty() {
+                    Ok(*cleared)
+                } else {
+                    Err(ReadingStop::Open(open))
+                }
             }
         }
     }
 
     /// The hold point of an id, as it stands for the first check at hand that needs it.
-    pub fn point(&self, id: &str, state: &State, mut hazards: Option<&mut Hazards<'_>>) -> Option<HoldPoint> {
+    pub fn point(
+        &self,
+        id: &str,
+        state: &State,
+        mut hazards: Option<&mut Hazards<'_>>,
+    ) -> Option<HoldPoint> {
         let by_rules = self.ground.catalogue.iter().find_map(|check| {
-            hold_points(&self.ground, state, check).into_iter().find(|point| point.point == id)
+            hold_points(&self.ground, state, check)
+                .into_iter()
+                .find(|point| point.point == id)
         });
         by_rules.or_else(|| {
             self.ground.catalogue.iter().find_map(|check| {
@@ -181,7 +208,10 @@ impl<'a> Gate<'a> {
                     ));
                 };
                 if !points.iter().any(|p| p.key == proof) {
-                    let first = points.iter().position(|p| p.stage >= Stage::TesterBefore).unwrap_or(points.len());
+                    let first = points
+                        .iter()
+                        .position(|p| p.stage >= Stage::TesterBefore)
+                        .unwrap_or(points.len());
                     points.insert(first, proof_point(&proof, clamp));
                 }
             }
@@ -207,7 +237,9 @@ impl<'a> Gate<'a> {
         let key = format!("keep-clear frames {}", state_key(&check.setup));
         let mut point = HoldPoint {
             point: marked("keep-clear", &key),
-            text: format!("Nobody touches it while the test is on: {danger}. Say so, and stand where you see it."),
+            text: format!(
+                "Nobody touches it while the test is on: {danger}. Say so, and stand where you see it."
+            ),
             setup: check.setup.clone(),
             wants: Vec::new(),
             test: None,

@@ -35,14 +35,28 @@ pub struct World {
 pub trait Simulator {
     /// What each hookup shows in `setup` under a hypothesis' draw, with the edits of the test itself added;
     /// nothing where it shows no number. Nothing trips.
-    fn read(&mut self, world: &World, draw: usize, setup: &Setup, test: &[Edit], hookups: &[Hookup]) -> Vec<Option<f64>>;
+    fn read(
+        &mut self,
+        world: &World,
+        draw: usize,
+        setup: &Setup,
+        test: &[Edit],
+        hookups: &[Hookup],
+    ) -> Vec<Option<f64>>;
 }
 
 impl<F> Simulator for F
 where
     F: FnMut(&World, usize, &Setup, &[Edit], &[Hookup]) -> Vec<Option<f64>>,
 {
-    fn read(&mut self, world: &World, draw: usize, setup: &Setup, test: &[Edit], hookups: &[Hookup]) -> Vec<Option<f64>> {
+    fn read(
+        &mut self,
+        world: &World,
+        draw: usize,
+        setup: &Setup,
+        test: &[Edit],
+        hookups: &[Hookup],
+    ) -> Vec<Option<f64>> {
         self(world, draw, setup, test, hookups)
     }
 }
@@ -104,8 +118,12 @@ impl HazardBook {
 
     /// Forgets one hypothesis (its draws were renewed).
     pub fn forget(&mut self, world: &str) {
-        self.found.values_mut().for_each(|by_world| drop(by_world.remove(world)));
-        self.dead.values_mut().for_each(|by_world| drop(by_world.remove(world)));
+        self.found
+            .values_mut()
+            .for_each(|by_world| drop(by_world.remove(world)));
+        self.dead
+            .values_mut()
+            .for_each(|by_world| drop(by_world.remove(world)));
         self.as_found.remove(world);
     }
 }
@@ -131,18 +149,36 @@ impl<'a> Hazards<'a> {
         body: &'a Body,
         simulator: &'a mut dyn Simulator,
     ) -> Self {
-        Self { book, worlds, body, simulator, standing: None }
+        Self {
+            book,
+            worlds,
+            body,
+            simulator,
+            standing: None,
+        }
     }
 
     /// Simulates a check under every credible hypothesis.
     pub fn assess(&mut self, ground: &Ground<'_>, check: &Check) -> Assessment {
         let mut result = Assessment::default();
-        let all: Vec<(String, Stance)> = stances(ground, check).into_iter().map(|s| (s.key(), s)).collect();
-        let wants = if isolates(check) { before_lift(ground, check) } else { Vec::new() };
+        let all: Vec<(String, Stance)> = stances(ground, check)
+            .into_iter()
+            .map(|s| (s.key(), s))
+            .collect();
+        let wants = if isolates(check) {
+            before_lift(ground, check)
+        } else {
+            Vec::new()
+        };
         let names: Vec<&str> = wants.iter().map(|w| w.name.as_str()).collect();
-        let dead_key = all.first().map(|(key, _)| format!("{key}|{}", names.join("+")));
+        let dead_key = all
+            .first()
+            .map(|(key, _)| format!("{key}|{}", names.join("+")));
         let worlds = self.worlds;
-        for world in worlds.iter().filter(|w| !all.is_empty() && w.p >= ground.numbers.credible) {
+        for world in worlds
+            .iter()
+            .filter(|w| !all.is_empty() && w.p >= ground.numbers.credible)
+        {
             for (key, stance) in &all {
                 let finding = self.finding(ground, world, key, stance);
                 keep_worst(&mut result.touch, finding.touch, world.p);
@@ -150,7 +186,8 @@ impl<'a> Hazards<'a> {
                     keep_worst(&mut result.lifting, Some(raised), world.p);
                 }
             }
-            if let (Some((_, first)), Some(key), false) = (all.first(), &dead_key, wants.is_empty()) {
+            if let (Some((_, first)), Some(key), false) = (all.first(), &dead_key, wants.is_empty())
+            {
                 let dead = self.not_dead(world, key, first, &wants);
                 keep_worst(&mut result.not_dead, dead, world.p);
             }
@@ -167,7 +204,11 @@ impl<'a> Hazards<'a> {
             for touches in self.as_found(ground, world) {
                 for ((between, local), touch) in pairs.iter().zip(touches) {
                     if over(ground, touch) {
-                        keep_worst(&mut worst, Some(raised(between, touch, world, *local)), world.p);
+                        keep_worst(
+                            &mut worst,
+                            Some(raised(between, touch, world, *local)),
+                            world.p,
+                        );
                     }
                 }
             }
@@ -185,7 +226,12 @@ impl<'a> Hazards<'a> {
         let mut sum = 0.0;
         for world in worlds.iter().filter(|w| w.p >= ground.numbers.credible) {
             let draws = self.as_found(ground, world);
-            let live = |touches: &Vec<Touch>| pairs.iter().zip(touches).any(|((_, local), t)| !local && over(ground, *t));
+            let live = |touches: &Vec<Touch>| {
+                pairs
+                    .iter()
+                    .zip(touches)
+                    .any(|((_, local), t)| !local && over(ground, *t))
+            };
             let share = draws.iter().filter(|t| live(t)).count() as f64 / draws.len().max(1) as f64;
             sum += world.p * share;
         }
@@ -199,8 +245,9 @@ impl<'a> Hazards<'a> {
         }
         let pairs = touchables(ground);
         let floor = floor(ground);
-        let draws: Vec<Vec<Touch>> =
-            (0..world.draws).map(|draw| self.touches(world, draw, &Setup::default(), &[], &pairs, floor)).collect();
+        let draws: Vec<Vec<Touch>> = (0..world.draws)
+            .map(|draw| self.touches(world, draw, &Setup::default(), &[], &pairs, floor))
+            .collect();
         self.book.as_found.insert(world.id.clone(), draws.clone());
         draws
     }
@@ -215,12 +262,21 @@ impl<'a> Hazards<'a> {
         pairs: &[([String; 2], bool)],
         floor: f64,
     ) -> Vec<Touch> {
-        let volts = |between: &[String; 2], meter: Option<Meter>| Hookup::Volts { between: between.clone(), meter };
+        let volts = |between: &[String; 2], meter: Option<Meter>| Hookup::Volts {
+            between: between.clone(),
+            meter,
+        };
         let open: Vec<Hookup> = pairs.iter().map(|(pair, _)| volts(pair, None)).collect();
         let open = self.simulator.read(world, draw, setup, test, &open);
         let mut touches = vec![Touch::default(); pairs.len()];
-        let higher: Vec<usize> =
-            (0..pairs.len()).filter(|i| open.get(*i).copied().flatten().is_some_and(|v| v.abs() > floor)).collect();
+        let higher: Vec<usize> = (0..pairs.len())
+            .filter(|i| {
+                open.get(*i)
+                    .copied()
+                    .flatten()
+                    .is_some_and(|v| v.abs() > floor)
+            })
+            .collect();
         if higher.is_empty() {
             return touches;
         }
@@ -233,7 +289,11 @@ impl<'a> Hazards<'a> {
         for (order, index) in higher.iter().enumerate() {
             let u0 = open.get(*index).copied().flatten().unwrap_or(0.0).abs();
             let u1 = loaded.get(order).copied().flatten().unwrap_or(u0).abs();
-            let behind = if u1 > 0.0 { PROBE_OHMS * (u0 / u1 - 1.0) } else { f64::INFINITY };
+            let behind = if u1 > 0.0 {
+                PROBE_OHMS * (u0 / u1 - 1.0)
+            } else {
+                f64::INFINITY
+            };
             if let Some(slot) = touches.get_mut(*index)
                 && behind.is_finite()
             {
@@ -243,21 +303,46 @@ impl<'a> Hazards<'a> {
         touches
     }
 
-    fn finding(&mut self, ground: &Ground<'_>, world: &World, key: &str, stance: &Stance) -> Finding {
-        if let Some(known) = self.book.found.get(key).and_then(|by_world| by_world.get(&world.id)) {
+    fn finding(
+        &mut self,
+        ground: &Ground<'_>,
+        world: &World,
+        key: &str,
+        stance: &Stance,
+    ) -> Finding {
+        if let Some(known) = self
+            .book
+            .found
+            .get(key)
+            .and_then(|by_world| by_world.get(&world.id))
+        {
             return known.clone();
         }
         let pairs = touchables(ground);
         let mut finding = Finding::default();
         for draw in 0..world.draws {
-            let touches = self.touches(world, draw, &stance.setup, &stance.burden, &pairs, floor(ground));
+            let touches = self.touches(
+                world,
+                draw,
+                &stance.setup,
+                &stance.burden,
+                &pairs,
+                floor(ground),
+            );
             if touches.iter().any(|t| over(ground, *t)) {
                 let before = self.as_found(ground, world);
                 let before = before.get(draw);
                 for (index, ((between, local), touch)) in pairs.iter().zip(&touches).enumerate() {
-                    let was = before.and_then(|all| all.get(index)).copied().unwrap_or_default();
+                    let was = before
+                        .and_then(|all| all.get(index))
+                        .copied()
+                        .unwrap_or_default();
                     if raises(ground, was, *touch) {
-                        keep_worst(&mut finding.touch, Some(raised(between, *touch, world, *local)), world.p);
+                        keep_worst(
+                            &mut finding.touch,
+                            Some(raised(between, *touch, world, *local)),
+                            world.p,
+                        );
                     }
                 }
             }
@@ -265,48 +350,96 @@ impl<'a> Hazards<'a> {
                 self.lifting(ground, world, draw, stance, &mut finding);
             }
         }
-        self.book.found.entry(key.to_owned()).or_default().insert(world.id.clone(), finding.clone());
+        self.book
+            .found
+            .entry(key.to_owned())
+            .or_default()
+            .insert(world.id.clone(), finding.clone());
         finding
     }
 
-    fn lifting(&mut self, ground: &Ground<'_>, world: &World, draw: usize, stance: &Stance, finding: &mut Finding) {
+    fn lifting(
+        &mut self,
+        ground: &Ground<'_>,
+        world: &World,
+        draw: usize,
+        stance: &Stance,
+        finding: &mut Finding,
+    ) {
         let clamps: Vec<Hookup> = stance
             .lifting
             .iter()
             // A cut parts all conductors at once; what is read there is a matter of its dead proof.
             .filter(|end| !end.ends_with(".split"))
-            .map(|end| Hookup::Amps { around: vec![end.clone()] })
+            .map(|end| Hookup::Amps {
+                around: vec![end.clone()],
+            })
             .collect();
-        let amps = self.simulator.read(world, draw, &stance.setup, &stance.burden, &clamps);
+        let amps = self
+            .simulator
+            .read(world, draw, &stance.setup, &stance.burden, &clamps);
         for (clamp, amps) in clamps.iter().zip(amps) {
-            let (Hookup::Amps { around }, Some(amps)) = (clamp, amps) else { continue };
+            let (Hookup::Amps { around }, Some(amps)) = (clamp, amps) else {
+                continue;
+            };
             let Some(end) = around.first() else { continue };
             if amps.abs() > ground.numbers.lift_amps {
-                let touch = Touch { volts: 0.0, amps: amps.abs() };
-                finding.lifting.push(raised(&[end.clone(), String::new()], touch, world, false));
+                let touch = Touch {
+                    volts: 0.0,
+                    amps: amps.abs(),
+                };
+                finding
+                    .lifting
+                    .push(raised(&[end.clone(), String::new()], touch, world, false));
             }
         }
     }
 
     /// The worst wanted reading over its limit once isolated.
-    fn not_dead(&mut self, world: &World, key: &str, stance: &Stance, wants: &[Want]) -> Option<Raised> {
-        if let Some(known) = self.book.dead.get(key).and_then(|by_world| by_world.get(&world.id)) {
+    fn not_dead(
+        &mut self,
+        world: &World,
+        key: &str,
+        stance: &Stance,
+        wants: &[Want],
+    ) -> Option<Raised> {
+        if let Some(known) = self
+            .book
+            .dead
+            .get(key)
+            .and_then(|by_world| by_world.get(&world.id))
+        {
             return known.clone();
         }
         let mut worst: Option<Raised> = None;
-        let hookups: Vec<Hookup> =
-            wants.iter().map(|w| Hookup::Volts { between: w.between.clone(), meter: None }).collect();
+        let hookups: Vec<Hookup> = wants
+            .iter()
+            .map(|w| Hookup::Volts {
+                between: w.between.clone(),
+                meter: None,
+            })
+            .collect();
         for draw in 0..world.draws {
-            let volts = self.simulator.read(world, draw, &stance.setup, &[], &hookups);
+            let volts = self
+                .simulator
+                .read(world, draw, &stance.setup, &[], &hookups);
             for (want, volts) in wants.iter().zip(volts) {
                 let volts = volts.unwrap_or(0.0).abs();
                 if volts > want.limit_volts {
                     let touch = Touch { volts, amps: 0.0 };
-                    keep_worst(&mut worst, Some(raised(&want.between, touch, world, false)), world.p);
+                    keep_worst(
+                        &mut worst,
+                        Some(raised(&want.between, touch, world, false)),
+                        world.p,
+                    );
                 }
             }
         }
-        self.book.dead.entry(key.to_owned()).or_default().insert(world.id.clone(), worst.clone());
+        self.book
+            .dead
+            .entry(key.to_owned())
+            .or_default()
+            .insert(world.id.clone(), worst.clone());
         worst
     }
 }
@@ -343,7 +476,10 @@ fn keep_worst(slot: &mut Option<Raised>, next: Option<Raised>, p: f64) {
     let Some(mut next) = next else { return };
     next.p = p;
     let rank = |r: &Raised| (u8::from(!r.local), r.volts, r.amps);
-    if slot.as_ref().is_none_or(|known| rank(known).partial_cmp(&rank(&next)) == Some(std::cmp::Ordering::Less)) {
+    if slot
+        .as_ref()
+        .is_none_or(|known| rank(known).partial_cmp(&rank(&next)) == Some(std::cmp::Ordering::Less))
+    {
         *slot = Some(next);
     }
 }
@@ -354,14 +490,33 @@ impl Raised {
         let [a, b] = &self.between;
         let place = terminal_name(ground.site, a);
         if b.is_empty() {
-            return format!("up to {} in {a} before it is lifted if {}", amps_text(self.amps), self.says);
+            return format!(
+                "up to {} in {a} before it is lifted if {}",
+                amps_text(self.amps),
+                self.says
+            );
         }
-        let against = if b == "soil" { String::new() } else { format!(" against {}", terminal_name(ground.site, b)) };
-        let body = if self.amps > 0.0 { format!(" ({} through a person)", amps_text(self.amps)) } else { String::new() };
-        format!("up to {:.0} V on {place}{against}{body} if {}", self.volts, self.says)
+        let against = if b == "soil" {
+            String::new()
+        } else {
+            format!(" against {}", terminal_name(ground.site, b))
+        };
+        let body = if self.amps > 0.0 {
+            format!(" ({} through a person)", amps_text(self.amps))
+        } else {
+            String::new()
+        };
+        format!(
+            "up to {:.0} V on {place}{against}{body} if {}",
+            self.volts, self.says
+        )
     }
 }
 
 fn amps_text(amps: f64) -> String {
-    if amps < 1.0 { format!("{:.0} mA", amps * 1000.0) } else { format!("{amps:.1} A") }
+    if amps < 1.0 {
+        format!("{:.0} mA", amps * 1000.0)
+    } else {
+        format!("{amps:.1} A")
+    }
 }

@@ -13,11 +13,19 @@ use crate::knowledge::{Hookup, Setup, SourceMode, UnplugSet};
 /// The state in which a check's ends are lifted: its own openings, and, where it ends up energised,
 /// every main switch of the boards at which something is lifted.
 pub(super) fn isolation(ground: &Ground<'_>, check: &Check) -> Setup {
-    let mut setup = Setup { open: check.setup.open.clone(), ..Setup::default() };
+    let mut setup = Setup {
+        open: check.setup.open.clone(),
+        ..Setup::default()
+    };
     setup.unplug = check.setup.unplug.clone();
     setup.off = check.setup.off.clone();
     if check.energised {
-        for board in check.setup.lift.iter().filter_map(|end| board_of_end(ground.site, end)) {
+        for board in check
+            .setup
+            .lift
+            .iter()
+            .filter_map(|end| board_of_end(ground.site, end))
+        {
             for main in mains_of(ground.site, board) {
                 if !setup.open.contains(&main) {
                     setup.open.push(main);
@@ -46,7 +54,15 @@ struct Builder<'a> {
 
 impl Builder<'_> {
     /// Adds a point whose id is its name, with a mark of its state where it has one.
-    fn push(&mut self, stage: Stage, name: &str, key: &str, setup: &Setup, text: String, wants: Vec<Want>) {
+    fn push(
+        &mut self,
+        stage: Stage,
+        name: &str,
+        key: &str,
+        setup: &Setup,
+        text: String,
+        wants: Vec<Want>,
+    ) {
         let id = marked(name, key);
         let mut point = HoldPoint {
             point: id,
@@ -65,7 +81,12 @@ impl Builder<'_> {
 
     fn identify(&mut self) {
         let site = self.ground.site;
-        let mut sources: Vec<String> = site.boards.iter().flat_map(|b| &b.mains).map(|m| m.id.clone()).collect();
+        let mut sources: Vec<String> = site
+            .boards
+            .iter()
+            .flat_map(|b| &b.mains)
+            .map(|m| m.id.clone())
+            .collect();
         sources.extend(site.sources.iter().map(|s| s.id.clone()));
         let text = format!(
             "Find every source: {}; a second tariff, a submain, an inverter, battery, generator inlet or UPS, a \
@@ -73,13 +94,25 @@ impl Builder<'_> {
              freezers) and keep others out.",
             list(&sources)
         );
-        self.push(Stage::Identify, "identify-sources", "", &Setup::default(), text, Vec::new());
+        self.push(
+            Stage::Identify,
+            "identify-sources",
+            "",
+            &Setup::default(),
+            text,
+            Vec::new(),
+        );
     }
 
     /// What the last test left lifted and this one wants landed.
     fn restore(&mut self) {
-        let landing: Vec<String> =
-            self.state.lifted().iter().filter(|end| !self.check.setup.lift.contains(end)).cloned().collect();
+        let landing: Vec<String> = self
+            .state
+            .lifted()
+            .iter()
+            .filter(|end| !self.check.setup.lift.contains(end))
+            .cloned()
+            .collect();
         if landing.is_empty() {
             return;
         }
@@ -98,7 +131,10 @@ impl Builder<'_> {
         setup.on.clear();
         setup.provoke = None;
         setup.lift.retain(|end| self.check.setup.lift.contains(end));
-        for board in landing.iter().filter_map(|end| board_of_end(self.ground.site, end)) {
+        for board in landing
+            .iter()
+            .filter_map(|end| board_of_end(self.ground.site, end))
+        {
             for main in mains_of(self.ground.site, board) {
                 if !setup.open.contains(&main) {
                     setup.open.push(main);
@@ -147,14 +183,32 @@ impl Builder<'_> {
         let wants = before_lift(ground, self.check);
         let named: Vec<&str> = wants.iter().map(|w| w.name.as_str()).collect();
         let dead_key = format!("{key}|{}", named.join(","));
-        let go_on = !self.state.leaves_isolation(&Setup { lift: self.check.setup.lift.clone(), ..off.clone() });
+        let go_on = !self.state.leaves_isolation(&Setup {
+            lift: self.check.setup.lift.clone(),
+            ..off.clone()
+        });
 
         let tester = "Prove the two-pole tester on a known live source or a proving unit: it reads, its leads and tips \
                       are whole.";
-        self.push(Stage::TesterBefore, "prove-tester-before", &dead_key, &off, tester.to_owned(), Vec::new());
-        self.push(Stage::Isolate, "isolate", &key, &off, isolate_text(ground, &off), Vec::new());
-        let covered =
-            go_on && self.state.is_bracketed() && wants.iter().all(|w| self.state.is_dead(&w.between));
+        self.push(
+            Stage::TesterBefore,
+            "prove-tester-before",
+            &dead_key,
+            &off,
+            tester.to_owned(),
+            Vec::new(),
+        );
+        self.push(
+            Stage::Isolate,
+            "isolate",
+            &key,
+            &off,
+            isolate_text(ground, &off),
+            Vec::new(),
+        );
+        let covered = go_on
+            && self.state.is_bracketed()
+            && wants.iter().all(|w| self.state.is_dead(&w.between));
         let dead = format!(
             "Prove dead where the work is, every conductor to every other and each to a stake in open ground: all {} \
              readings at or below their limits. A proximity indicator proves nothing.",
@@ -162,7 +216,14 @@ impl Builder<'_> {
         );
         self.push(Stage::ProveDead, "prove-dead", &dead_key, &off, dead, wants);
         let after = "Prove the tester again on the same known source: it still reads.";
-        self.push(Stage::TesterAfter, "prove-tester-after", &dead_key, &off, after.to_owned(), Vec::new());
+        self.push(
+            Stage::TesterAfter,
+            "prove-tester-after",
+            &dead_key,
+            &off,
+            after.to_owned(),
+            Vec::new(),
+        );
         self.lifted(&off, &dead_key);
         self.settle(first, go_on, covered);
     }
@@ -172,11 +233,17 @@ impl Builder<'_> {
         if lift.is_empty() {
             return;
         }
-        let setup = Setup { lift: lift.clone(), ..off.clone() };
+        let setup = Setup {
+            lift: lift.clone(),
+            ..off.clone()
+        };
         let key = format!("{dead_key}|{}", state_key(&setup));
         let wants = after_lift(self.ground, self.check);
         if !lift.iter().any(|end| parts_neutral(end)) {
-            let text = format!("Lift {}, one at a time; insulate each end and tag it.", list(lift));
+            let text = format!(
+                "Lift {}, one at a time; insulate each end and tag it.",
+                list(lift)
+            );
             self.push(Stage::ProveDeadAgain, "lift", &key, &setup, text, wants);
             return;
         }
@@ -186,21 +253,39 @@ impl Builder<'_> {
             list(lift),
             words(self.ground.site).earth
         );
-        self.push(Stage::ProveDeadAgain, "prove-dead-again", &key, &setup, text, wants);
+        self.push(
+            Stage::ProveDeadAgain,
+            "prove-dead-again",
+            &key,
+            &setup,
+            text,
+            wants,
+        );
         let after = "Prove the tester once more on the same known source.";
-        self.push(Stage::TesterAfterAgain, "prove-tester-after-again", &key, &setup, after.to_owned(), Vec::new());
+        self.push(
+            Stage::TesterAfterAgain,
+            "prove-tester-after-again",
+            &key,
+            &setup,
+            after.to_owned(),
+            Vec::new(),
+        );
     }
 
     /// Sets `done` by the order in which the points were done, and by proofs of dead that still stand.
     fn settle(&mut self, first: usize, go_on: bool, covered: bool) {
         let opened = {
             let open = self.state.open();
-            self.points.get(first + 1).is_some_and(|p| p.setup.open.iter().all(|device| open.contains(device)))
+            self.points
+                .get(first + 1)
+                .is_some_and(|p| p.setup.open.iter().all(|device| open.contains(device)))
         };
         let order = |state: &State, p: &HoldPoint| state.order_of(&p.point, &p.key);
         let mut least = 0;
         for index in first..self.points.len() {
-            let Some(point) = self.points.get_mut(index) else { break };
+            let Some(point) = self.points.get_mut(index) else {
+                break;
+            };
             let by_proof = covered
                 && match point.stage {
                     Stage::Isolate => opened,
@@ -213,7 +298,8 @@ impl Builder<'_> {
             }
             if let Some(when) = order(self.state, point) {
                 // Before and isolating may come in either order; the rest follows what it rests on.
-                point.done = when > least || matches!(point.stage, Stage::TesterBefore | Stage::Isolate);
+                point.done =
+                    when > least || matches!(point.stage, Stage::TesterBefore | Stage::Isolate);
                 least = least.max(when);
             }
         }
@@ -222,8 +308,15 @@ impl Builder<'_> {
     /// Closing what the last test left open, for a test that is energised.
     fn energise(&mut self) {
         let target = &self.check.setup;
-        let before = if self.lifts_now() { isolation(self.ground, self.check) } else { self.state.setup().clone() };
-        let closes = before.open.iter().any(|device| !target.open.contains(device));
+        let before = if self.lifts_now() {
+            isolation(self.ground, self.check)
+        } else {
+            self.state.setup().clone()
+        };
+        let closes = before
+            .open
+            .iter()
+            .any(|device| !target.open.contains(device));
         if !self.check.energised || !closes {
             return;
         }
@@ -235,11 +328,19 @@ impl Builder<'_> {
             ..Setup::default()
         };
         for source in &self.ground.site.sources {
-            let mode = target.sources.get(&source.id).copied().unwrap_or(SourceMode::On);
+            let mode = target
+                .sources
+                .get(&source.id)
+                .copied()
+                .unwrap_or(SourceMode::On);
             setup.sources.insert(source.id.clone(), mode);
         }
         let key = state_key(&setup);
-        let ends = if target.lift.is_empty() { "" } else { "Lifted ends shrouded and out of reach. " };
+        let ends = if target.lift.is_empty() {
+            ""
+        } else {
+            "Lifted ends shrouded and out of reach. "
+        };
         let text = format!(
             "{ends}Link and {} in place wherever they are not part of this test. Covers on, tools out, people told and \
              clear. Take off your own lock, then close what is to be closed.",
@@ -250,35 +351,70 @@ impl Builder<'_> {
 
     /// Whether something is still to be lifted for this check.
     fn lifts_now(&self) -> bool {
-        self.check.setup.lift.iter().any(|end| !self.state.lifted().contains(end))
+        self.check
+            .setup
+            .lift
+            .iter()
+            .any(|end| !self.state.lifted().contains(end))
     }
 
     fn live(&mut self) {
-        let touches = !matches!(self.check.hookup, Hookup::Seen { .. } | Hookup::Lamp { .. } | Hookup::Holds { .. });
+        let touches = !matches!(
+            self.check.hookup,
+            Hookup::Seen { .. } | Hookup::Lamp { .. } | Hookup::Holds { .. }
+        );
         if touches {
             let text = "Prove the instrument on a known source: it reads, its leads, tips and fuses are whole and fit \
                         for the place.";
-            self.push(Stage::Live, "prove-tester-live", "", &Setup::default(), text.to_owned(), Vec::new());
+            self.push(
+                Stage::Live,
+                "prove-tester-live",
+                "",
+                &Setup::default(),
+                text.to_owned(),
+                Vec::new(),
+            );
         }
         let place = terminals_of(self.ground.site, &self.check.hookup)
             .first()
             .map_or_else(|| self.check.place.clone(), |t| place_of(t).to_owned());
         let text = "Insulating gloves and mat, one hand, no jewellery; covers stay on wherever the test can be made \
                     so. Nobody else within reach; nothing metal touched.";
-        self.push(Stage::Live, &format!("live-work-{}", place.replace('.', "-")), "", &Setup::default(), text.to_owned(), Vec::new());
+        self.push(
+            Stage::Live,
+            &format!("live-work-{}", place.replace('.', "-")),
+            "",
+            &Setup::default(),
+            text.to_owned(),
+            Vec::new(),
+        );
         if let Hookup::Holds { device } = &self.check.hookup {
             let key = format!("keep-clear {device} {}", state_key(&self.check.setup));
             let text = format!(
                 "Nobody touches anything that {device} feeds, nor pipes, while it is closed and watched. Stand aside."
             );
-            self.push(Stage::Extra, "keep-clear", &key, &self.check.setup.clone(), text, Vec::new());
+            self.push(
+                Stage::Extra,
+                "keep-clear",
+                &key,
+                &self.check.setup.clone(),
+                text,
+                Vec::new(),
+            );
         }
     }
 
     fn extras(&mut self) {
         for extra in &self.check.hold {
             let key = format!("{}|{}", extra.text, state_key(&self.check.setup));
-            self.push(Stage::Extra, &extra.point, &key, &self.check.setup, extra.text.clone(), Vec::new());
+            self.push(
+                Stage::Extra,
+                &extra.point,
+                &key,
+                &self.check.setup,
+                extra.text.clone(),
+                Vec::new(),
+            );
         }
     }
 }
@@ -289,15 +425,31 @@ fn isolate_text(ground: &Ground<'_>, off: &Setup) -> String {
         UnplugSet::These(items) if items.is_empty() => String::new(),
         UnplugSet::These(items) => format!("Unplug {}. ", list(items)),
     };
-    let switched = if off.off.is_empty() { String::new() } else { format!("Switch off {}. ", list(&off.off)) };
+    let switched = if off.off.is_empty() {
+        String::new()
+    } else {
+        format!("Switch off {}. ", list(&off.off))
+    };
     let sources: Vec<String> = off.sources.keys().cloned().collect();
     let feeds = if sources.is_empty() {
         String::new()
     } else {
-        format!(" Switch off and lock {} too, AC and DC sides, and wait until they have discharged.", list(&sources))
+        format!(
+            " Switch off and lock {} too, AC and DC sides, and wait until they have discharged.",
+            list(&sources)
+        )
     };
-    let neutral = ground.site.boards.iter().flat_map(|b| &b.mains).any(|m| off.open.contains(&m.id) && !m.switches_neutral());
-    let stays = if neutral { " The neutral is not switched: it stays joined to the network." } else { "" };
+    let neutral = ground
+        .site
+        .boards
+        .iter()
+        .flat_map(|b| &b.mains)
+        .any(|m| off.open.contains(&m.id) && !m.switches_neutral());
+    let stays = if neutral {
+        " The neutral is not switched: it stays joined to the network."
+    } else {
+        ""
+    };
     format!(
         "{unplug}{switched}Open {}; lock, tag, keep the key. See a load go off: a label is no proof.{feeds}{stays}",
         list(&off.open)
@@ -325,13 +477,23 @@ pub(super) fn make_safe(state: &State) -> HoldPoint {
 
 /// The hold points of a check in the present state, in order, each with whether it is done.
 pub(super) fn hold_points(ground: &Ground<'_>, state: &State, check: &Check) -> Vec<HoldPoint> {
-    let mut builder = Builder { ground, state, check, points: Vec::new() };
+    let mut builder = Builder {
+        ground,
+        state,
+        check,
+        points: Vec::new(),
+    };
     if state.is_standing() {
         builder.points.push(make_safe(state));
     }
     let lifts = builder.lifts_now();
     let chain = isolates(check) && (!check.energised || lifts);
-    if chain || state.lifted().iter().any(|end| !check.setup.lift.contains(end)) {
+    if chain
+        || state
+            .lifted()
+            .iter()
+            .any(|end| !check.setup.lift.contains(end))
+    {
         builder.identify();
     }
     builder.restore();
@@ -349,8 +511,11 @@ pub(super) fn hold_points(ground: &Ground<'_>, state: &State, check: &Check) -> 
 
 /// Whether every place that a check touches or lifts at is switched off in its setup.
 pub(super) fn is_dead_everywhere(ground: &Ground<'_>, check: &Check) -> bool {
-    terminals_of(ground.site, &check.hookup).iter().all(|terminal| {
-        let place = place_of(terminal);
-        super::places::cuts(ground.site, place).is_empty() || is_off(ground.site, place, &check.setup)
-    })
+    terminals_of(ground.site, &check.hookup)
+        .iter()
+        .all(|terminal| {
+            let place = place_of(terminal);
+            super::places::cuts(ground.site, place).is_empty()
+                || is_off(ground.site, place, &check.setup)
+        })
 }

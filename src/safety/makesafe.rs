@@ -21,8 +21,14 @@ pub fn warnings(symptom: &SymptomRow, rows: &[WarningRow]) -> Vec<Warning> {
         .warnings
         .iter()
         .map(|code| {
-            let text = rows.iter().find(|row| &row.code == code).map_or_else(|| code.replace('-', " "), |r| r.text.clone());
-            Warning { code: code.clone(), text }
+            let text = rows
+                .iter()
+                .find(|row| &row.code == code)
+                .map_or_else(|| code.replace('-', " "), |r| r.text.clone());
+            Warning {
+                code: code.clone(),
+                text,
+            }
         })
         .collect()
 }

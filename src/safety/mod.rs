@@ -22,12 +22,11 @@ mod words;
 #[cfg(test)]
 mod tests;
 
-
 pub use body::{Body, BodyError, Touch};
 pub use gate::{Cleared, Gate, ReadingStop, Verdict};
 pub use hazard::{Assessment, HazardBook, Hazards, Raised, Simulator, World};
-pub use point::{HoldPoint, Stage, Want};
 pub use makesafe::{Warning, is_standing, warnings};
+pub use point::{HoldPoint, Stage, Want};
 pub use rules::Refusal;
 pub use simulate::{CircuitSimulator, Drawn};
 pub use state::{DeadProof, NotDead, State, StateEvent};

@@ -49,8 +49,13 @@ impl Stage {
     pub(super) fn moves(self) -> bool {
         matches!(
             self,
-            Self::Restore | Self::Isolate | Self::ProveDead | Self::TesterAfter | Self::ProveDeadAgain
-                | Self::TesterAfterAgain | Self::Energise
+            Self::Restore
+                | Self::Isolate
+                | Self::ProveDead
+                | Self::TesterAfter
+                | Self::ProveDeadAgain
+                | Self::TesterAfterAgain
+                | Self::Energise
         )
     }
 
@@ -95,17 +100,32 @@ pub(super) fn state_key(setup: &Setup) -> String {
         items.dedup();
         items.join("+")
     };
-    let sources: Vec<String> = setup.sources.iter().map(|(id, mode)| format!("{id}={mode:?}")).collect();
-    format!("{}|{}|{}", sorted(&setup.open), sorted(&setup.lift), sources.join("+"))
+    let sources: Vec<String> = setup
+        .sources
+        .iter()
+        .map(|(id, mode)| format!("{id}={mode:?}"))
+        .collect();
+    format!(
+        "{}|{}|{}",
+        sorted(&setup.open),
+        sorted(&setup.lift),
+        sources.join("+")
+    )
 }
 
 /// Six hexadecimal digits of a key (FNV-1a); the whole key is compared besides.
 fn mark(key: &str) -> String {
-    let hash = key.bytes().fold(0x811c_9dc5_u32, |hash, byte| (hash ^ u32::from(byte)).wrapping_mul(0x0100_0193));
+    let hash = key.bytes().fold(0x811c_9dc5_u32, |hash, byte| {
+        (hash ^ u32::from(byte)).wrapping_mul(0x0100_0193)
+    });
     format!("{:06x}", hash & 0x00ff_ffff)
 }
 
 /// A name with a mark of its state, where it has one.
 pub(super) fn marked(name: &str, key: &str) -> String {
-    if key.is_empty() { name.to_owned() } else { format!("{name}-{}", mark(key)) }
+    if key.is_empty() {
+        name.to_owned()
+    } else {
+        format!("{name}-{}", mark(key))
+    }
 }

@@ -17,18 +17,26 @@ pub(super) struct Gained {
 impl Gained {
     /// No place in its words: it holds for the whole site.
     pub fn is_site_wide(&self, what: &str) -> bool {
-        !self.places.iter().any(|place| !place.is_empty() && what.split(' ').any(|word| overlaps(word, place)))
+        !self
+            .places
+            .iter()
+            .any(|place| !place.is_empty() && what.split(' ').any(|word| overlaps(word, place)))
     }
 
     /// Whether it is about a place, or about something within or around it.
     pub fn sits_at(&self, what: &str, place: &str) -> bool {
-        what.split(' ').any(|word| overlaps(word, place)) || self.places.iter().any(|own| overlaps(own, place))
+        what.split(' ').any(|word| overlaps(word, place))
+            || self.places.iter().any(|own| overlaps(own, place))
     }
 }
 
 /// Whether two places are one, or one lies within the other.
 fn overlaps(a: &str, b: &str) -> bool {
-    let within = |inner: &str, outer: &str| inner.strip_prefix(outer).is_some_and(|rest| rest.starts_with('.'));
+    let within = |inner: &str, outer: &str| {
+        inner
+            .strip_prefix(outer)
+            .is_some_and(|rest| rest.starts_with('.'))
+    };
     a == b || within(a, b) || within(b, a)
 }
 
@@ -41,11 +49,20 @@ pub(super) fn gives(proof: &Proof, value: &ParsedValue) -> bool {
         ParsedValue::Under { under } => (f64::NEG_INFINITY, *under),
         ParsedValue::Word { word } => {
             let infinite = *word == Word::Open;
-            let named = proof.word.as_deref().is_none_or(|wanted| says(*word, wanted));
-            return if proof.word.is_some() { named } else { infinite && proof.most.is_none() && proof.least.is_some() };
+            let named = proof
+                .word
+                .as_deref()
+                .is_none_or(|wanted| says(*word, wanted));
+            return if proof.word.is_some() {
+                named
+            } else {
+                infinite && proof.most.is_none() && proof.least.is_some()
+            };
         }
     };
-    proof.word.is_none() && proof.least.is_none_or(|least| low >= least) && proof.most.is_none_or(|most| high <= most)
+    proof.word.is_none()
+        && proof.least.is_none_or(|least| low >= least)
+        && proof.most.is_none_or(|most| high <= most)
 }
 
 /// Whether a word is written so.
@@ -69,9 +86,18 @@ pub(super) fn stake_reading(site: &Site, check: &Check, value: &ParsedValue) -> 
 
 /// Whether a check reads volts from the main earth bar to an independent stake with everything as found.
 pub(super) fn is_stake_check(site: &Site, check: &Check) -> bool {
-    let Hookup::Volts { between, .. } = &check.hookup else { return false };
-    let bar = site.boards.get(site.main_board).map(|b| format!("{}.PE", b.id));
-    let pair = between.contains(&"soil".to_owned()) && bar.is_some_and(|bar| between.contains(&bar));
-    let as_found = Setup { closed: check.setup.closed.clone(), ..Setup::default() };
+    let Hookup::Volts { between, .. } = &check.hookup else {
+        return false;
+    };
+    let bar = site
+        .boards
+        .get(site.main_board)
+        .map(|b| format!("{}.PE", b.id));
+    let pair =
+        between.contains(&"soil".to_owned()) && bar.is_some_and(|bar| between.contains(&bar));
+    let as_found = Setup {
+        closed: check.setup.closed.clone(),
+        ..Setup::default()
+    };
     pair && check.setup == as_found
 }

@@ -3,13 +3,16 @@
 use super::Ground;
 use super::hold::{is_dead_everywhere, isolates, isolation};
 use super::places::{
-    board_of_end, conductor_of, is_line, is_off, mains_of, place_of, place_of_end, source_is_off, terminals_of,
+    board_of_end, conductor_of, is_line, is_off, mains_of, place_of, place_of_end, source_is_off,
+    terminals_of,
 };
 use super::proof::is_stake_check;
 use super::state::State;
 use super::words::{list, words};
 use crate::checks::Check;
-use crate::knowledge::{Hookup, Meter, Provoke, Setup, SourceMode, UnplugSet, procedure::MeterWord};
+use crate::knowledge::{
+    Hookup, Meter, Provoke, Setup, SourceMode, UnplugSet, procedure::MeterWord,
+};
 use crate::site::System;
 
 /// Why a check may not be made, and what may be done instead.
@@ -24,11 +27,17 @@ pub struct Refusal {
 
 impl Refusal {
     pub(super) fn new(reason: impl Into<String>, safer: impl Into<String>) -> Self {
-        Self { reason: reason.into(), safer: Some(safer.into()) }
+        Self {
+            reason: reason.into(),
+            safer: Some(safer.into()),
+        }
     }
 
     pub(super) fn plain(reason: impl Into<String>) -> Self {
-        Self { reason: reason.into(), safer: None }
+        Self {
+            reason: reason.into(),
+            safer: None,
+        }
     }
 }
 
@@ -50,7 +59,11 @@ pub(super) fn refusal(ground: &Ground<'_>, state: &State, check: &Check) -> Opti
 }
 
 fn fuse(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
-    let opens = check.setup.open.iter().any(|device| device == "service.fuse");
+    let opens = check
+        .setup
+        .open
+        .iter()
+        .any(|device| device == "service.fuse");
     (opens && !ground.site.may_isolate_supply).then(|| {
         Refusal::new(
             "the service fuse is not this person's to open",
@@ -61,19 +74,29 @@ fn fuse(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
 
 /// A tingle, a shock, flaring lamps: metal is live until a stake says otherwise.
 fn standing(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal> {
-    let upstream = check.setup.open.iter().any(|device| device == "service.fuse");
+    let upstream = check
+        .setup
+        .open
+        .iter()
+        .any(|device| device == "service.fuse");
     if is_stake_check(ground.site, check) || upstream {
         return None;
     }
     let earth = words(ground.site).earth;
     match state.stake() {
         None if state.is_standing() => Some(Refusal::new(
-            format!("every metal part counts as live until the {earth} bar has been read against a stake"),
-            format!("first volts from {earth} bar to a stake in open ground, 10 m clear; nobody in reach of metal"),
+            format!(
+                "every metal part counts as live until the {earth} bar has been read against a stake"
+            ),
+            format!(
+                "first volts from {earth} bar to a stake in open ground, 10 m clear; nobody in reach of metal"
+            ),
         )),
         Some(stake) if stake.volts > ground.numbers.touch_volts => {
             let mains_off = state.network_attended()
-                && mains_of(ground.site, ground.site.main_board).iter().all(|m| check.setup.open.contains(m));
+                && mains_of(ground.site, ground.site.main_board)
+                    .iter()
+                    .all(|m| check.setup.open.contains(m));
             (!mains_off).then(|| {
                 Refusal::new(
                     format!("{:.0} V from {earth} bar to stake: withdraw; nothing more is tested live here", stake.volts),
@@ -81,13 +104,15 @@ fn standing(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal
                 )
             })
         }
-        Some(stake) if stake.volts > ground.numbers.dead_volts && stirs(ground, check) => Some(Refusal::new(
-            format!(
-                "{:.0} V from {earth} bar to stake: no load, loop, RCD or low-impedance test, and nothing touched",
-                stake.volts
-            ),
-            "high-impedance volts to the stake and a clamp, gloved; then the network operator",
-        )),
+        Some(stake) if stake.volts > ground.numbers.dead_volts && stirs(ground, check) => {
+            Some(Refusal::new(
+                format!(
+                    "{:.0} V from {earth} bar to stake: no load, loop, RCD or low-impedance test, and nothing touched",
+                    stake.volts
+                ),
+                "high-impedance volts to the stake and a clamp, gloved; then the network operator",
+            ))
+        }
         _ => None,
     }
 }
@@ -96,12 +121,22 @@ fn standing(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal
 fn stirs(ground: &Ground<'_>, check: &Check) -> bool {
     let draws = match &check.hookup {
         Hookup::Volts { meter, .. } => low_impedance(meter),
-        Hookup::Loop { .. } | Hookup::TripTime { .. } | Hookup::Ramp { .. } | Hookup::Lamp { .. } => true,
+        Hookup::Loop { .. }
+        | Hookup::TripTime { .. }
+        | Hookup::Ramp { .. }
+        | Hookup::Lamp { .. } => true,
         Hookup::Holds { .. } => true,
-        Hookup::Amps { .. } | Hookup::Insulation { .. } | Hookup::Continuity { .. } | Hookup::Seen { .. } => false,
+        Hookup::Amps { .. }
+        | Hookup::Insulation { .. }
+        | Hookup::Continuity { .. }
+        | Hookup::Seen { .. } => false,
     };
     let lifts = !check.setup.lift.is_empty();
-    check.energised && (draws || lifts || added_watts(ground, &check.setup) > 0.0 || check.setup.provoke.is_some())
+    check.energised
+        && (draws
+            || lifts
+            || added_watts(ground, &check.setup) > 0.0
+            || check.setup.provoke.is_some())
 }
 
 fn low_impedance(meter: &Option<Meter>) -> bool {
@@ -117,14 +152,21 @@ pub(super) fn added_watts(ground: &Ground<'_>, setup: &Setup) -> f64 {
     let loads: f64 = setup.load.iter().map(|l| l.watts.abs()).sum();
     let of = |id: &String| {
         let site = ground.site;
-        site.equipment_index(id).and_then(|e| site.equipment.get(e)).and_then(|e| e.watts).unwrap_or(f64::INFINITY)
+        site.equipment_index(id)
+            .and_then(|e| site.equipment.get(e))
+            .and_then(|e| e.watts)
+            .unwrap_or(f64::INFINITY)
     };
     loads + setup.on.iter().map(of).sum::<f64>()
 }
 
 /// Main earth, link and bond stay where they are while any supply is on; a neutral never leaves before its lines.
 fn lifts(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
-    check.setup.lift.iter().find_map(|end| lift(ground, check, end))
+    check
+        .setup
+        .lift
+        .iter()
+        .find_map(|end| lift(ground, check, end))
 }
 
 fn lift(ground: &Ground<'_>, check: &Check, end: &str) -> Option<Refusal> {
@@ -134,12 +176,17 @@ fn lift(ground: &Ground<'_>, check: &Check, end: &str) -> Option<Refusal> {
     let home = site.boards.get(board)?;
     let off = is_off(site, &home.id, setup);
     let mains = list(&mains_of(site, board));
-    let feeding = (0..site.sources.len()).find(|s| !source_is_off(site, *s, setup) && !check_isolates_source(ground, check));
+    let feeding = (0..site.sources.len())
+        .find(|s| !source_is_off(site, *s, setup) && !check_isolates_source(ground, check));
     if end.ends_with(".main-earth") || end.ends_with(".link") || end.ends_with(".bond") {
         if !off {
             return Some(Refusal::new(
-                format!("{end} may be the only neutral left: it is not parted while any supply is on"),
-                format!("open and lock {mains} (every tariff and source) and prove dead first, or clamp instead of lifting"),
+                format!(
+                    "{end} may be the only neutral left: it is not parted while any supply is on"
+                ),
+                format!(
+                    "open and lock {mains} (every tariff and source) and prove dead first, or clamp instead of lifting"
+                ),
             ));
         }
         if let Some(source) = feeding.and_then(|s| site.sources.get(s)) {
@@ -163,12 +210,19 @@ fn lift(ground: &Ground<'_>, check: &Check, end: &str) -> Option<Refusal> {
     if end.contains(".N@") || end.contains(".PE@") {
         let place = place_of_end(site, end);
         let head = end.split('.').next().unwrap_or(end);
-        let lines_lifted = setup.lift.iter().any(|e| e.starts_with(&format!("{head}.L")) && e.ends_with("@board"));
+        let lines_lifted = setup
+            .lift
+            .iter()
+            .any(|e| e.starts_with(&format!("{head}.L")) && e.ends_with("@board"));
         if !is_off(site, &place, setup) && !lines_lifted {
             let line = words(site).line;
             return Some(Refusal::new(
-                format!("{end} is not parted while its {line}s are closed: what is left behind it rises to full volts"),
-                format!("{line}s off first ({head}.breaker, better {mains}), prove dead, then lift, then prove again"),
+                format!(
+                    "{end} is not parted while its {line}s are closed: what is left behind it rises to full volts"
+                ),
+                format!(
+                    "{line}s off first ({head}.breaker, better {mains}), prove dead, then lift, then prove again"
+                ),
             ));
         }
     }
@@ -177,27 +231,45 @@ fn lift(ground: &Ground<'_>, check: &Check, end: &str) -> Option<Refusal> {
 
 /// Dead tests take their sources off by the isolating hold point.
 fn check_isolates_source(ground: &Ground<'_>, check: &Check) -> bool {
-    ground.site.sources.iter().all(|s| !s.backup && !check.setup.sources.contains_key(&s.id)) && isolates(check)
+    ground
+        .site
+        .sources
+        .iter()
+        .all(|s| !s.backup && !check.setup.sources.contains_key(&s.id))
+        && isolates(check)
 }
 
 /// Insulation and continuity are for dead conductors, and insulation between line and neutral for bare ones.
 fn dead_quantity(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
-    let dead_only = matches!(check.hookup, Hookup::Insulation { .. } | Hookup::Continuity { .. });
+    let dead_only = matches!(
+        check.hookup,
+        Hookup::Insulation { .. } | Hookup::Continuity { .. }
+    );
     if !dead_only {
         return None;
     }
     let live_word = |t: &String| is_line(t) || conductor_of(t) == "N";
     if check.energised
-        || (terminals_of(ground.site, &check.hookup).iter().any(live_word) && !is_dead_everywhere(ground, check))
+        || (terminals_of(ground.site, &check.hookup)
+            .iter()
+            .any(live_word)
+            && !is_dead_everywhere(ground, check))
     {
         return Some(Refusal::new(
             "this is a test for dead conductors, and the supply is on there",
             "open and lock what feeds it and prove dead first",
         ));
     }
-    let Hookup::Insulation { between: [a, b], .. } = &check.hookup else { return None };
+    let Hookup::Insulation {
+        between: [a, b], ..
+    } = &check.hookup
+    else {
+        return None;
+    };
     let parts = |one: &[String], other: &[String]| {
-        one.iter().any(|t| is_line(t)) && other.iter().any(|t| conductor_of(t) == "N") && !other.iter().any(|t| is_line(t))
+        one.iter().any(|t| is_line(t))
+            && other.iter().any(|t| conductor_of(t) == "N")
+            && !other.iter().any(|t| is_line(t))
     };
     let across = (parts(a, b) && !a.iter().any(|t| conductor_of(t) == "N"))
         || (parts(b, a) && !b.iter().any(|t| conductor_of(t) == "N"));
@@ -205,7 +277,9 @@ fn dead_quantity(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
     let (line, _) = words(ground.site).letters;
     Some(Refusal::new(
         format!("insulation {line}–N with {connected} connected destroys it or reads it"),
-        format!("join {line} and N and test both to earth, or unplug everything on the circuit first"),
+        format!(
+            "join {line} and N and test both to earth, or unplug everything on the circuit first"
+        ),
     ))
 }
 
@@ -238,16 +312,29 @@ fn sources(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
     if check.energised || !isolates(check) {
         return None;
     }
-    ground.site.sources.iter().enumerate().find_map(|(index, source)| {
-        let named_on = check.setup.sources.get(&source.id).is_some_and(|mode| *mode != SourceMode::Off);
-        let stays = named_on || (source.backup && !source_is_off(ground.site, index, &check.setup));
-        stays.then(|| {
-            Refusal::new(
-                format!("{} can feed what this test calls dead", source.id),
-                format!("switch {} off on both sides, lock it, and prove dead", source.id),
-            )
+    ground
+        .site
+        .sources
+        .iter()
+        .enumerate()
+        .find_map(|(index, source)| {
+            let named_on = check
+                .setup
+                .sources
+                .get(&source.id)
+                .is_some_and(|mode| *mode != SourceMode::Off);
+            let stays =
+                named_on || (source.backup && !source_is_off(ground.site, index, &check.setup));
+            stays.then(|| {
+                Refusal::new(
+                    format!("{} can feed what this test calls dead", source.id),
+                    format!(
+                        "switch {} off on both sides, lock it, and prove dead",
+                        source.id
+                    ),
+                )
+            })
         })
-    })
 }
 
 /// Water on live parts only behind an RCD.
@@ -258,17 +345,31 @@ fn wetting(ground: &Ground<'_>, check: &Check) -> Option<Refusal> {
     let site = ground.site;
     let bare = terminals_of(site, &check.hookup)
         .iter()
-        .filter_map(|t| place_of(t).split('.').next().and_then(|head| site.circuit_index(head)))
+        .filter_map(|t| {
+            place_of(t)
+                .split('.')
+                .next()
+                .and_then(|head| site.circuit_index(head))
+        })
         .filter_map(|(board, circuit)| site.boards.get(board).and_then(|b| b.circuits.get(circuit)))
         .any(|circuit| circuit.rcd.is_none());
-    bare.then(|| Refusal::new("water on a live circuit without an RCD", "wet it with the circuit dead, and test its insulation"))
+    bare.then(|| {
+        Refusal::new(
+            "water on a live circuit without an RCD",
+            "wet it with the circuit dead, and test its insulation",
+        )
+    })
 }
 
 /// A proof that nothing at hand can give.
 fn unprovable(ground: &Ground<'_>, state: &State, check: &Check) -> Option<Refusal> {
     proofs_needed(ground, check).into_iter().find_map(|proof| {
         let open = !state.has(&proof) && check_that_proves(ground, check, &proof).is_none();
-        open.then(|| Refusal::plain(format!("it needs this proved first: {proof}; and no test at hand proves it")))
+        open.then(|| {
+            Refusal::plain(format!(
+                "it needs this proved first: {proof}; and no test at hand proves it"
+            ))
+        })
     })
 }
 
@@ -297,7 +398,12 @@ pub(super) fn proofs_needed(ground: &Ground<'_>, check: &Check) -> Vec<String> {
     if let Some(place) = earth_path(check).filter(|place| ground.site.point_ref(place).is_some()) {
         add(numbers.earth_proof.replace("{at}", &place));
     }
-    for end in check.setup.lift.iter().filter(|end| end.ends_with(".main-earth")) {
+    for end in check
+        .setup
+        .lift
+        .iter()
+        .filter(|end| end.ends_with(".main-earth"))
+    {
         if quiet_check(ground, check, end).is_some() {
             add(quiet_proof(end, &isolation(ground, check).open));
         }
@@ -309,13 +415,24 @@ pub(super) fn proofs_needed(ground: &Ground<'_>, check: &Check) -> Vec<String> {
 fn earth_path(check: &Check) -> Option<String> {
     let through = |between: &[String; 2]| {
         let line = between.iter().find(|t| is_line(t))?;
-        let earth = between.iter().find(|t| matches!(conductor_of(t), "PE" | "frame" | "pipe"))?;
-        Some(place_of(if conductor_of(earth) == "PE" { earth } else { line }).to_owned())
+        let earth = between
+            .iter()
+            .find(|t| matches!(conductor_of(t), "PE" | "frame" | "pipe"))?;
+        Some(
+            place_of(if conductor_of(earth) == "PE" {
+                earth
+            } else {
+                line
+            })
+            .to_owned(),
+        )
     };
     match &check.hookup {
         Hookup::Loop { between, .. } => through(between),
         Hookup::Volts { between, meter } if low_impedance(meter) => through(between),
-        Hookup::TripTime { rcd, at, .. } | Hookup::Ramp { rcd, at } => Some(at.clone().unwrap_or_else(|| rcd.clone())),
+        Hookup::TripTime { rcd, at, .. } | Hookup::Ramp { rcd, at } => {
+            Some(at.clone().unwrap_or_else(|| rcd.clone()))
+        }
         _ => None,
     }
 }
@@ -331,24 +448,38 @@ pub(super) fn quiet_proof(end: &str, open: &[String]) -> String {
 /// The check whose clamp gives the quiet proof of an end in the state in which it is lifted.
 pub(super) fn quiet_check<'a>(ground: &Ground<'a>, check: &Check, end: &str) -> Option<&'a Check> {
     let wanted = quiet_proof(end, &isolation(ground, check).open);
-    ground.catalogue.iter().find(|c| proves_quiet(c).is_some_and(|proof| proof == wanted))
+    ground
+        .catalogue
+        .iter()
+        .find(|c| proves_quiet(c).is_some_and(|proof| proof == wanted))
 }
 
 /// The quiet proof that a clamp reading round one liftable end may give.
 pub(super) fn proves_quiet(check: &Check) -> Option<String> {
-    let Hookup::Amps { around } = &check.hookup else { return None };
+    let Hookup::Amps { around } = &check.hookup else {
+        return None;
+    };
     match around.as_slice() {
-        [end] if check.setup.lift.is_empty() && check.setup.load.is_empty() => Some(quiet_proof(end, &check.setup.open)),
+        [end] if check.setup.lift.is_empty() && check.setup.load.is_empty() => {
+            Some(quiet_proof(end, &check.setup.open))
+        }
         _ => None,
     }
 }
 
 /// The cheapest check at hand whose reading gives a proof, other than the one that needs it.
-pub(super) fn check_that_proves<'a>(ground: &Ground<'a>, check: &Check, proof: &str) -> Option<&'a Check> {
+pub(super) fn check_that_proves<'a>(
+    ground: &Ground<'a>,
+    check: &Check,
+    proof: &str,
+) -> Option<&'a Check> {
     ground
         .catalogue
         .iter()
         .filter(|c| (c.test.as_str(), c.at.as_str()) != (check.test.as_str(), check.at.as_str()))
-        .filter(|c| c.proves.iter().any(|p| p.what == proof) || proves_quiet(c).is_some_and(|quiet| quiet == proof))
+        .filter(|c| {
+            c.proves.iter().any(|p| p.what == proof)
+                || proves_quiet(c).is_some_and(|quiet| quiet == proof)
+        })
         .min_by(|a, b| a.minutes.total_cmp(&b.minutes))
 }

@@ -35,7 +35,12 @@ pub struct CircuitSimulator<'a> {
 impl<'a> CircuitSimulator<'a> {
     /// On a network, with no hypothesis yet.
     pub fn new(network: &'a Network) -> Self {
-        Self { network, draws: BTreeMap::new(), wired: BTreeMap::new(), nodes: 0 }
+        Self {
+            network,
+            draws: BTreeMap::new(),
+            wired: BTreeMap::new(),
+            nodes: 0,
+        }
     }
 
     /// Whether a hypothesis has draws.
@@ -59,34 +64,70 @@ impl<'a> CircuitSimulator<'a> {
             self.nodes = 0;
         }
         let drawn = self.draws.get(world).and_then(|draws| draws.get(draw));
-        let wiring = drawn.and_then(|d| self.network.edited(&d.edits).ok()).map(Wiring::new);
+        let wiring = drawn
+            .and_then(|d| self.network.edited(&d.edits).ok())
+            .map(Wiring::new);
         self.nodes += wiring.as_ref().map_or(0, |w| w.circuit.nodes.len());
         self.wired.insert(key, wiring);
     }
 }
 
 impl Simulator for CircuitSimulator<'_> {
-    fn read(&mut self, world: &World, draw: usize, setup: &Setup, test: &[Edit], hookups: &[Hookup]) -> Vec<Option<f64>> {
+    fn read(
+        &mut self,
+        world: &World,
+        draw: usize,
+        setup: &Setup,
+        test: &[Edit],
+        hookups: &[Hookup],
+    ) -> Vec<Option<f64>> {
         self.wire(&world.id, draw);
-        let wiring = self.wired.get(&(world.id.clone(), draw)).and_then(Option::as_ref);
+        let wiring = self
+            .wired
+            .get(&(world.id.clone(), draw))
+            .and_then(Option::as_ref);
         let drawn = self.draws.get(&world.id).and_then(|draws| draws.get(draw));
-        let (Some(wiring), Some(drawn)) = (wiring, drawn) else { return vec![None; hookups.len()] };
-        let values = Values { theta: &drawn.theta, common: &self.network.common };
+        let (Some(wiring), Some(drawn)) = (wiring, drawn) else {
+            return vec![None; hookups.len()];
+        };
+        let values = Values {
+            theta: &drawn.theta,
+            common: &self.network.common,
+        };
         let solver = QuickSolver::new(wiring, values);
-        let Ok(sw) = wiring.circuit.switching(setup, Unnamed::AsFound) else { return vec![None; hookups.len()] };
-        let extra: Vec<Extra> = test.iter().filter_map(|edit| burden(wiring, edit)).collect();
+        let Ok(sw) = wiring.circuit.switching(setup, Unnamed::AsFound) else {
+            return vec![None; hookups.len()];
+        };
+        let extra: Vec<Extra> = test
+            .iter()
+            .filter_map(|edit| burden(wiring, edit))
+            .collect();
         let mut running = sw.clone();
         let phasors = protect::solve(&solver, &mut running, &extra);
-        hookups.iter().map(|hookup| one(&solver, wiring, &running, &extra, &phasors, hookup)).collect()
+        hookups
+            .iter()
+            .map(|hookup| one(&solver, wiring, &running, &extra, &phasors, hookup))
+            .collect()
     }
 }
 
 /// The instrument's path as a further branch.
 fn burden(wiring: &Wiring, edit: &Edit) -> Option<Extra> {
-    let Edit::Shunt { between: [a, b], ohms, .. } = edit else { return None };
+    let Edit::Shunt {
+        between: [a, b],
+        ohms,
+        ..
+    } = edit
+    else {
+        return None;
+    };
     let a = wiring.circuit.terminal(a).ok()?;
     let b = wiring.circuit.terminal(b).ok()?;
-    (*ohms > 0.0).then(|| Extra { a, b, y: Complex64::new(1.0 / ohms, 0.0) })
+    (*ohms > 0.0).then(|| Extra {
+        a,
+        b,
+        y: Complex64::new(1.0 / ohms, 0.0),
+    })
 }
 
 fn one(
@@ -98,13 +139,22 @@ fn one(
     hookup: &Hookup,
 ) -> Option<f64> {
     match hookup {
-        Hookup::Volts { between: [a, b], meter } => {
+        Hookup::Volts {
+            between: [a, b],
+            meter,
+        } => {
             let a = wiring.circuit.terminal(a).ok()?;
             let b = wiring.circuit.terminal(b).ok()?;
             let across = |p: &Phasors| Some(special::abs(p.volts.get(a)? - p.volts.get(b)?));
-            let Some(Meter::Ohms(ohms)) = meter else { return across(phasors) };
+            let Some(Meter::Ohms(ohms)) = meter else {
+                return across(phasors);
+            };
             let mut loaded = extra.to_vec();
-            loaded.push(Extra { a, b, y: Complex64::new(1.0 / ohms.max(1e-3), 0.0) });
+            loaded.push(Extra {
+                a,
+                b,
+                y: Complex64::new(1.0 / ohms.max(1e-3), 0.0),
+            });
             let mut sw = sw.clone();
             across(&protect::solve(solver, &mut sw, &loaded))
         }

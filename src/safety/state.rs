@@ -27,7 +27,9 @@ pub struct DeadProof {
 
 /// A reading that a hold point wants, and that is over its limit.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
-#[error("{name} reads {volts} V, over {limit} V: not dead; leave it alone, find what feeds it, and prove again")]
+#[error(
+    "{name} reads {volts} V, over {limit} V: not dead; leave it alone, find what feeds it, and prove again"
+)]
 pub struct NotDead {
     /// Name of the want.
     pub name: String,
@@ -176,7 +178,9 @@ impl State {
 
     /// Conditions proved, with their log entries.
     pub fn proofs(&self) -> impl Iterator<Item = (&String, u64)> {
-        self.proofs.iter().map(|(what, gained)| (what, gained.entry))
+        self.proofs
+            .iter()
+            .map(|(what, gained)| (what, gained.entry))
     }
 
     /// Whether a condition is proved now.
@@ -206,7 +210,10 @@ impl State {
 
     /// Log entry of a point done, if its state is still the one it was done in.
     pub fn done(&self, point: &HoldPoint) -> Option<u64> {
-        self.done.get(&point.point).filter(|d| d.key == point.key).map(|d| d.entry)
+        self.done
+            .get(&point.point)
+            .filter(|d| d.key == point.key)
+            .map(|d| d.entry)
     }
 
     /// Order in which a point was done, later ones higher.
@@ -217,7 +224,8 @@ impl State {
     /// Whether two terminals are proved dead against each other now.
     pub(super) fn is_dead(&self, between: &[String; 2]) -> bool {
         self.dead.iter().any(|p| {
-            (p.at == between[0] && p.against == between[1]) || (p.at == between[1] && p.against == between[0])
+            (p.at == between[0] && p.against == between[1])
+                || (p.at == between[1] && p.against == between[0])
         })
     }
 
@@ -256,12 +264,21 @@ impl State {
         self.order += 1;
         match event {
             StateEvent::Arranged(setup) => self.arrange(site, setup),
-            StateEvent::PointDone { point, volts, entry } => self.point_done(site, point, volts, *entry),
+            StateEvent::PointDone {
+                point,
+                volts,
+                entry,
+            } => self.point_done(site, point, volts, *entry),
             StateEvent::PointCannot { point, why, entry } => {
                 self.done.remove(*point);
-                self.cannot.insert((*point).to_owned(), ((*why).to_owned(), *entry));
+                self.cannot
+                    .insert((*point).to_owned(), ((*why).to_owned(), *entry));
             }
-            StateEvent::Reading { check, value, entry } => self.reading(ground, check, value, *entry),
+            StateEvent::Reading {
+                check,
+                value,
+                entry,
+            } => self.reading(ground, check, value, *entry),
             StateEvent::FoundTripped { device, entry } => {
                 self.tripped.insert((*device).to_owned(), *entry);
             }
@@ -277,13 +294,19 @@ impl State {
             self.dead.clear();
             self.tester = Tester::Unproved;
             self.done.retain(|_, d| d.stage.outlives_state());
-            self.proofs.retain(|what, _| !what.starts_with("no current in "));
-        } else if to.lift.iter().any(|end| parts_neutral(end) && !self.setup.lift.contains(end)) {
+            self.proofs
+                .retain(|what, _| !what.starts_with("no current in "));
+        } else if to
+            .lift
+            .iter()
+            .any(|end| parts_neutral(end) && !self.setup.lift.contains(end))
+        {
             self.dead.clear();
             self.done.retain(|_, d| d.stage != Stage::ProveDeadAgain);
         }
         if state_key(&self.setup) != state_key(to) {
-            self.done.retain(|_, d| !matches!(d.stage, Stage::Energise | Stage::Restore));
+            self.done
+                .retain(|_, d| !matches!(d.stage, Stage::Energise | Stage::Restore));
         }
         let moved: Vec<String> = self
             .setup
@@ -305,7 +328,13 @@ impl State {
         self.setup = next;
     }
 
-    fn point_done(&mut self, site: &Site, point: &HoldPoint, volts: &BTreeMap<String, f64>, entry: u64) {
+    fn point_done(
+        &mut self,
+        site: &Site,
+        point: &HoldPoint,
+        volts: &BTreeMap<String, f64>,
+        entry: u64,
+    ) {
         if point.stage.moves() {
             self.arrange(site, &point.setup);
         }
@@ -313,17 +342,29 @@ impl State {
             let [at, against] = want.between.clone();
             let read = volts.get(&want.name).copied().unwrap_or(f64::INFINITY);
             self.dead.retain(|p| (&p.at, &p.against) != (&at, &against));
-            self.dead.push(DeadProof { at, against, volts: read, entry });
+            self.dead.push(DeadProof {
+                at,
+                against,
+                volts: read,
+                entry,
+            });
         }
         self.tester = match (point.stage, self.tester) {
             (Stage::TesterBefore, _) => Tester::Before,
             (Stage::ProveDead | Stage::ProveDeadAgain, Tester::Unproved) => Tester::Unproved,
-            (Stage::ProveDead | Stage::ProveDeadAgain, _) if !point.wants.is_empty() => Tester::Used,
+            (Stage::ProveDead | Stage::ProveDeadAgain, _) if !point.wants.is_empty() => {
+                Tester::Used
+            }
             (Stage::TesterAfter | Stage::TesterAfterAgain, Tester::Used) => Tester::Bracketed,
             (_, same) => same,
         };
         self.cannot.remove(&point.point);
-        let done = Done { entry, order: self.order, stage: point.stage, key: point.key.clone() };
+        let done = Done {
+            entry,
+            order: self.order,
+            stage: point.stage,
+            key: point.key.clone(),
+        };
         self.done.insert(point.point.clone(), done);
     }
 
@@ -341,11 +382,17 @@ impl State {
             self.stake = Some(StakeVolts { volts, entry });
         }
         let most = Some(ground.numbers.lift_amps);
-        let quiet = proves_quiet(check).map(|what| Proof { what, least: None, most, word: None });
+        let quiet = proves_quiet(check).map(|what| Proof {
+            what,
+            least: None,
+            most,
+            word: None,
+        });
         for proof in check.proves.iter().chain(&quiet) {
             if gives(proof, value) {
                 let places = check.at.split('+').map(str::to_owned).collect();
-                self.proofs.insert(proof.what.clone(), Gained { entry, places });
+                self.proofs
+                    .insert(proof.what.clone(), Gained { entry, places });
             } else {
                 self.proofs.remove(&proof.what);
             }
@@ -368,7 +415,8 @@ impl State {
         self.tester = Tester::Unproved;
         self.done.retain(|_, d| d.stage == Stage::MakeSafe);
         // What holds for the whole site hangs on a supply that may have changed meanwhile.
-        self.proofs.retain(|what, gained| !gained.is_site_wide(what));
+        self.proofs
+            .retain(|what, gained| !gained.is_site_wide(what));
         self.stake = None;
     }
 
@@ -413,5 +461,7 @@ fn touched_by(site: &Site, end: &str) -> String {
 fn gives_back(from: &Setup, to: &Setup) -> bool {
     from.open.iter().any(|device| !to.open.contains(device))
         || from.lift.iter().any(|end| !to.lift.contains(end))
-        || to.sources.iter().any(|(id, mode)| *mode != SourceMode::Off && from.sources.get(id) == Some(&SourceMode::Off))
+        || to.sources.iter().any(|(id, mode)| {
+            *mode != SourceMode::Off && from.sources.get(id) == Some(&SourceMode::Off)
+        })
 }

@@ -1,11 +1,12 @@
 //! Which voltages prove a place dead: every pair of its conductors, and each to an independent stake.
 
+use super::Ground;
 use super::places::{
-    Conductors, conductor_of, conductors_at, neutral_bar, parts_neutral, place_of, place_of_end, terminals_of,
+    Conductors, conductor_of, conductors_at, neutral_bar, parts_neutral, place_of, place_of_end,
+    terminals_of,
 };
 use super::point::Want;
 use super::words::letter;
-use super::Ground;
 use crate::checks::Check;
 
 /// The reference that hangs on nothing of the installation.
@@ -19,7 +20,9 @@ struct Wants<'a> {
 
 impl Wants<'_> {
     fn add(&mut self, a: &str, b: &str, limit_volts: f64) {
-        let same = |w: &Want| (w.between[0] == a && w.between[1] == b) || (w.between[0] == b && w.between[1] == a);
+        let same = |w: &Want| {
+            (w.between[0] == a && w.between[1] == b) || (w.between[0] == b && w.between[1] == a)
+        };
         if let Some(known) = self.list.iter_mut().find(|w| same(w)) {
             known.limit_volts = known.limit_volts.min(limit_volts);
             return;
@@ -28,7 +31,11 @@ impl Wants<'_> {
             return;
         }
         let name = self.name(a, b);
-        self.list.push(Want { name, between: [a.to_owned(), b.to_owned()], limit_volts });
+        self.list.push(Want {
+            name,
+            between: [a.to_owned(), b.to_owned()],
+            limit_volts,
+        });
     }
 
     fn name(&self, a: &str, b: &str) -> String {
@@ -88,7 +95,11 @@ impl Wants<'_> {
         }
         if end.ends_with(".main-earth") || end.ends_with(".link") || end.ends_with(".bond") {
             let bar = format!("{}.PE", place_of_end(site, end));
-            self.add(&bar, STAKE, self.ground.numbers.earth_lift_volts.min(self.dead()));
+            self.add(
+                &bar,
+                STAKE,
+                self.ground.numbers.earth_lift_volts.min(self.dead()),
+            );
         }
         if let Some(bond) = end.strip_suffix(".bond") {
             self.metal(&format!("{bond}.pipe"));
@@ -110,20 +121,41 @@ fn work_place(ground: &Ground<'_>, terminal: &str) -> Option<String> {
     let board = |b: usize| site.boards.get(b).map(|b| b.id.clone());
     known(place)
         .or_else(|| known(head))
-        .or_else(|| site.rcd_index(head).and_then(|(b, _)| board(b)).map(|b| format!("{b}.{head}")))
+        .or_else(|| {
+            site.rcd_index(head)
+                .and_then(|(b, _)| board(b))
+                .map(|b| format!("{b}.{head}"))
+        })
         .or_else(|| site.main_switch_index(head).and_then(|(b, _)| board(b)))
         .or_else(|| site.bond_index(head).and_then(|_| board(site.main_board)))
         .or_else(|| {
-            let at = site.equipment_index(head).and_then(|e| site.equipment.get(e))?.at;
+            let at = site
+                .equipment_index(head)
+                .and_then(|e| site.equipment.get(e))?
+                .at;
             let circuit = site.boards.get(at.board)?.circuits.get(at.circuit)?;
-            Some(format!("{}.{}", circuit.id, circuit.points.get(at.point)?.id))
+            Some(format!(
+                "{}.{}",
+                circuit.id,
+                circuit.points.get(at.point)?.id
+            ))
         })
 }
 
 /// Points whose cable a cut (`c1.p1.split`) takes off.
 fn onward_places(ground: &Ground<'_>, end: &str) -> Vec<String> {
-    let Some(at) = end.strip_suffix(".split").and_then(|cut| ground.site.point_ref(cut)) else { return Vec::new() };
-    let Some(circuit) = ground.site.boards.get(at.board).and_then(|b| b.circuits.get(at.circuit)) else {
+    let Some(at) = end
+        .strip_suffix(".split")
+        .and_then(|cut| ground.site.point_ref(cut))
+    else {
+        return Vec::new();
+    };
+    let Some(circuit) = ground
+        .site
+        .boards
+        .get(at.board)
+        .and_then(|b| b.circuits.get(at.circuit))
+    else {
         return Vec::new();
     };
     let next = circuit.points.iter().filter(|p| p.from == Some(at.point));
@@ -132,11 +164,18 @@ fn onward_places(ground: &Ground<'_>, end: &str) -> Vec<String> {
 
 /// Readings that prove dead what a check touches, opened and locked, before anything is lifted.
 pub(super) fn before_lift(ground: &Ground<'_>, check: &Check) -> Vec<Want> {
-    let mut wants = Wants { ground, list: Vec::new() };
+    let mut wants = Wants {
+        ground,
+        list: Vec::new(),
+    };
     for terminal in terminals_of(ground.site, &check.hookup) {
-        if matches!(conductor_of(&terminal), "frame" | "pipe" | "electrode") || terminal == "electrode" {
+        if matches!(conductor_of(&terminal), "frame" | "pipe" | "electrode")
+            || terminal == "electrode"
+        {
             wants.metal(&terminal);
-        } else if let Some(conductors) = work_place(ground, &terminal).and_then(|p| conductors_at(ground.site, &p)) {
+        } else if let Some(conductors) =
+            work_place(ground, &terminal).and_then(|p| conductors_at(ground.site, &p))
+        {
             wants.whole(&conductors);
         }
     }
@@ -153,14 +192,21 @@ pub(super) fn before_lift(ground: &Ground<'_>, check: &Check) -> Vec<Want> {
 
 /// Readings once ends are lifted: each parted neutral to earth, to the stake, to what it left, and to its neighbours.
 pub(super) fn after_lift(ground: &Ground<'_>, check: &Check) -> Vec<Want> {
-    let mut wants = Wants { ground, list: Vec::new() };
+    let mut wants = Wants {
+        ground,
+        list: Vec::new(),
+    };
     let limit = ground.numbers.dead_volts;
     let mut last: Option<String> = None;
     for end in check.setup.lift.iter().filter(|end| parts_neutral(end)) {
         let place = place_of_end(ground.site, end);
         for part in std::iter::once(place.clone()).chain(onward_places(ground, end)) {
-            let Some(conductors) = conductors_at(ground.site, &part) else { continue };
-            let Some(neutral) = conductors.neutral else { continue };
+            let Some(conductors) = conductors_at(ground.site, &part) else {
+                continue;
+            };
+            let Some(neutral) = conductors.neutral else {
+                continue;
+            };
             if let Some(earth) = &conductors.earth {
                 wants.add(&neutral, earth, limit);
                 wants.add(earth, STAKE, limit);

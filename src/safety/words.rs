@@ -18,10 +18,18 @@ pub struct Words {
 /// The words of a site.
 pub fn words(site: &Site) -> Words {
     match site.words {
-        WordSet::AuNz => Words { line: "active", earth: "earth", main_earth: "main earth", letters: ("A", "E") },
-        WordSet::Iec => {
-            Words { line: "line", earth: "PE", main_earth: "main earthing conductor", letters: ("L", "PE") }
-        }
+        WordSet::AuNz => Words {
+            line: "active",
+            earth: "earth",
+            main_earth: "main earth",
+            letters: ("A", "E"),
+        },
+        WordSet::Iec => Words {
+            line: "line",
+            earth: "PE",
+            main_earth: "main earthing conductor",
+            letters: ("L", "PE"),
+        },
     }
 }
 
@@ -58,7 +66,9 @@ pub fn terminal_name(site: &Site, terminal: &str) -> String {
         return format!("the {} (taps)", bond.name);
     }
     if conductor == "frame"
-        && let Some(item) = site.equipment_index(place).and_then(|e| site.equipment.get(e))
+        && let Some(item) = site
+            .equipment_index(place)
+            .and_then(|e| site.equipment.get(e))
     {
         return format!("the frame of the {}", item.name);
     }

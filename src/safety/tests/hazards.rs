@@ -6,23 +6,47 @@ use crate::network::Edit;
 use crate::safety::{Body, HazardBook, Hazards, World};
 
 fn body() -> Body {
-    Body::new(&[25.0, 50.0, 75.0, 100.0, 125.0], &[1175.0, 1100.0, 1025.0, 975.0, 900.0]).expect("a table")
+    Body::new(
+        &[25.0, 50.0, 75.0, 100.0, 125.0],
+        &[1175.0, 1100.0, 1025.0, 975.0, 900.0],
+    )
+    .expect("a table")
 }
 
 fn world(id: &str, p: f64) -> World {
-    World { id: id.to_owned(), says: format!("the {id} is open"), p, draws: 2 }
+    World {
+        id: id.to_owned(),
+        says: format!("the {id} is open"),
+        p,
+        draws: 2,
+    }
 }
 
 // Divider of a lost supply neutral: every tap rises by what flows back through the electrode (50 Ω and 1 Ω).
 fn lost_neutral(setup: &Setup, test: &[Edit], hookups: &[Hookup]) -> Vec<Option<f64>> {
     let off = setup.open.contains(&"main".to_owned());
     let mut siemens: f64 = setup.load.iter().map(|l| l.watts / (230.0 * 230.0)).sum();
-    siemens += test.iter().map(|e| if let Edit::Shunt { ohms, .. } = e { 1.0 / ohms } else { 0.0 }).sum::<f64>();
-    let amps = if off { 0.0 } else { 230.0 * siemens / (1.0 + 51.0 * siemens) };
+    siemens += test
+        .iter()
+        .map(|e| {
+            if let Edit::Shunt { ohms, .. } = e {
+                1.0 / ohms
+            } else {
+                0.0
+            }
+        })
+        .sum::<f64>();
+    let amps = if off {
+        0.0
+    } else {
+        230.0 * siemens / (1.0 + 51.0 * siemens)
+    };
     hookups
         .iter()
         .map(|h| match h {
-            Hookup::Volts { between: [a, b], .. } if b == "soil" && !a.ends_with(".L") => Some(50.0 * amps),
+            Hookup::Volts {
+                between: [a, b], ..
+            } if b == "soil" && !a.ends_with(".L") => Some(50.0 * amps),
             Hookup::Volts { .. } => Some(0.0),
             Hookup::Amps { .. } => Some(amps),
             _ => None,
@@ -34,14 +58,23 @@ fn clear(visit: &Visit, check: &Check, worlds: &[World]) -> Verdict {
     let mut book = HazardBook::new();
     let body = body();
     let mut solver = |w: &World, _: usize, s: &Setup, t: &[Edit], h: &[Hookup]| {
-        if w.id == "supply neutral" { lost_neutral(s, t, h) } else { vec![Some(0.0); h.len()] }
+        if w.id == "supply neutral" {
+            lost_neutral(s, t, h)
+        } else {
+            vec![Some(0.0); h.len()]
+        }
     };
     let mut hazards = Hazards::new(&mut book, worlds, &body, &mut solver);
     Gate::new(visit.ground()).clear(check, &visit.state, Some(&mut hazards))
 }
 
 fn ground_visit() -> Visit {
-    let mut stage = check("stage", "msb", r#"{"load": [{"at": "msb", "watts": 25}]}"#, volts("msb.PE", "soil"));
+    let mut stage = check(
+        "stage",
+        "msb",
+        r#"{"load": [{"at": "msb", "watts": 25}]}"#,
+        volts("msb.PE", "soil"),
+    );
     stage.proves = vec![proof("supply neutral", 6.0)];
     Visit::new(house(), vec![stage])
 }
@@ -50,36 +83,86 @@ fn ground_visit() -> Visit {
 fn a_load_that_lifts_the_taps_is_refused_while_the_cause_is_credible() {
     let mut visit = ground_visit();
     visit.numbers.free_watts = 5000.0;
-    let load = check("load", "msb", r#"{"load": [{"at": "msb", "watts": 2300}]}"#, volts("msb.L", "msb.N"));
-    let Verdict::Refused(refusal) = clear(&visit, &load, &[world("supply neutral", 0.3)]) else { panic!("not refused") };
-    assert!(refusal.reason.contains("157 V") || refusal.reason.contains("V on"), "{}", refusal.reason);
-    assert!(refusal.reason.contains("if the supply neutral is open"), "{}", refusal.reason);
-    assert!(matches!(clear(&visit, &load, &[world("supply neutral", 0.0004)]), Verdict::Cleared(_)));
-    assert!(matches!(clear(&visit, &load, &[world("something else", 0.9)]), Verdict::Cleared(_)));
+    let load = check(
+        "load",
+        "msb",
+        r#"{"load": [{"at": "msb", "watts": 2300}]}"#,
+        volts("msb.L", "msb.N"),
+    );
+    let Verdict::Refused(refusal) = clear(&visit, &load, &[world("supply neutral", 0.3)]) else {
+        panic!("not refused")
+    };
+    assert!(
+        refusal.reason.contains("157 V") || refusal.reason.contains("V on"),
+        "{}",
+        refusal.reason
+    );
+    assert!(
+        refusal.reason.contains("if the supply neutral is open"),
+        "{}",
+        refusal.reason
+    );
+    assert!(matches!(
+        clear(&visit, &load, &[world("supply neutral", 0.0004)]),
+        Verdict::Cleared(_)
+    ));
+    assert!(matches!(
+        clear(&visit, &load, &[world("something else", 0.9)]),
+        Verdict::Cleared(_)
+    ));
 }
 
 #[test]
 fn the_proof_still_to_be_gained_stands_before_the_danger() {
     let mut visit = ground_visit();
-    let load = check("load", "msb", r#"{"load": [{"at": "msb", "watts": 2300}]}"#, volts("msb.L", "msb.N"));
+    let load = check(
+        "load",
+        "msb",
+        r#"{"load": [{"at": "msb", "watts": 2300}]}"#,
+        volts("msb.L", "msb.N"),
+    );
     let worlds = [world("supply neutral", 0.3)];
-    let Verdict::Cleared(cleared) = clear(&visit, &load, &worlds) else { panic!("advisable behind its proof") };
-    assert!(cleared.open_points().any(|p| p.point == "proof-supply-neutral"));
+    let Verdict::Cleared(cleared) = clear(&visit, &load, &worlds) else {
+        panic!("advisable behind its proof")
+    };
+    assert!(
+        cleared
+            .open_points()
+            .any(|p| p.point == "proof-supply-neutral")
+    );
     assert!(cleared.hazard().is_some_and(|text| text.contains("V on")));
     let stage = visit.catalogue[0].clone();
     visit.read(&stage, 0.2);
-    assert!(matches!(clear(&visit, &load, &worlds), Verdict::Refused(_)), "the odds must have fallen too");
+    assert!(
+        matches!(clear(&visit, &load, &worlds), Verdict::Refused(_)),
+        "the odds must have fallen too"
+    );
 }
 
 #[test]
 fn a_loop_test_is_judged_by_its_own_current() {
     let visit = ground_visit();
-    let test = |amps| check("loop", "c1.p1", "{}", loop_test("c1.p1.L", "c1.p1.N", Some(amps)));
+    let test = |amps| {
+        check(
+            "loop",
+            "c1.p1",
+            "{}",
+            loop_test("c1.p1.L", "c1.p1.N", Some(amps)),
+        )
+    };
     let worlds = [world("supply neutral", 0.3)];
-    let Verdict::Cleared(small) = clear(&visit, &test(0.015), &worlds) else { panic!("15 mA raises under 1 V") };
+    let Verdict::Cleared(small) = clear(&visit, &test(0.015), &worlds) else {
+        panic!("15 mA raises under 1 V")
+    };
     assert_eq!(small.hazard(), None);
-    let Verdict::Cleared(large) = clear(&visit, &test(10.0), &worlds) else { panic!("behind its proof") };
-    assert!(large.hazard().is_some_and(|text| text.contains("supply neutral is open")));
+    let Verdict::Cleared(large) = clear(&visit, &test(10.0), &worlds) else {
+        panic!("behind its proof")
+    };
+    assert!(
+        large
+            .hazard()
+            .is_some_and(|text| text.contains("supply neutral is open"))
+    );
 }
 
 #[test]
@@ -88,13 +171,28 @@ fn what_is_live_as_found_is_not_the_tests_doing_but_people_are_kept_off() {
     let mut book = HazardBook::new();
     let body = body();
     let worlds = [world("supply neutral", 0.3)];
-    let mut solver = |_: &World, _: usize, _: &Setup, _: &[Edit], h: &[Hookup]| vec![Some(120.0); h.len()];
+    let mut solver =
+        |_: &World, _: usize, _: &Setup, _: &[Edit], h: &[Hookup]| vec![Some(120.0); h.len()];
     let mut hazards = Hazards::new(&mut book, &worlds, &body, &mut solver);
-    let unplug = check("v", "c1.p1", r#"{"unplug": "all"}"#, volts("c1.p1.L", "c1.p1.N"));
+    let unplug = check(
+        "v",
+        "c1.p1",
+        r#"{"unplug": "all"}"#,
+        volts("c1.p1.L", "c1.p1.N"),
+    );
     let gate = Gate::new(visit.ground());
-    let Verdict::Cleared(cleared) = gate.clear(&unplug, &visit.state, Some(&mut hazards)) else { panic!("as found") };
-    assert_eq!(cleared.points().first().map(|p| p.point.as_str()), Some("make-safe"));
-    assert!(hazards.standing(&visit.ground()).is_some_and(|raised| raised.volts > 100.0));
+    let Verdict::Cleared(cleared) = gate.clear(&unplug, &visit.state, Some(&mut hazards)) else {
+        panic!("as found")
+    };
+    assert_eq!(
+        cleared.points().first().map(|p| p.point.as_str()),
+        Some("make-safe")
+    );
+    assert!(
+        hazards
+            .standing(&visit.ground())
+            .is_some_and(|raised| raised.volts > 100.0)
+    );
 }
 
 #[test]
@@ -105,29 +203,61 @@ fn a_frame_alone_is_kept_clear_of() {
     let worlds = [world("cord earth", 0.2)];
     let mut solver = |_: &World, _: usize, s: &Setup, _: &[Edit], h: &[Hookup]| {
         let on = s.on.contains(&"kettle".to_owned());
-        let frame = |h: &Hookup| matches!(h, Hookup::Volts { between: [a, _], .. } if a == "kettle.frame");
-        h.iter().map(|h| Some(if on && frame(h) { 97.0 } else { 0.0 })).collect()
+        let frame =
+            |h: &Hookup| matches!(h, Hookup::Volts { between: [a, _], .. } if a == "kettle.frame");
+        h.iter()
+            .map(|h| Some(if on && frame(h) { 97.0 } else { 0.0 }))
+            .collect()
     };
     let mut hazards = Hazards::new(&mut book, &worlds, &body, &mut solver);
-    let on = check("v", "c1.p1", r#"{"on": ["kettle"]}"#, volts("c1.p1.L", "c1.p1.N"));
+    let on = check(
+        "v",
+        "c1.p1",
+        r#"{"on": ["kettle"]}"#,
+        volts("c1.p1.L", "c1.p1.N"),
+    );
     let gate = Gate::new(visit.ground());
-    let Verdict::Cleared(cleared) = gate.clear(&on, &visit.state, Some(&mut hazards)) else { panic!("kept clear of") };
+    let Verdict::Cleared(cleared) = gate.clear(&on, &visit.state, Some(&mut hazards)) else {
+        panic!("kept clear of")
+    };
     let clear = cleared.points().last().expect("points");
-    assert!(clear.point.starts_with("keep-clear-") && clear.text.contains("97 V"), "{}", clear.text);
+    assert!(
+        clear.point.starts_with("keep-clear-") && clear.text.contains("97 V"),
+        "{}",
+        clear.text
+    );
     let found = gate.point(&clear.point, &visit.state, Some(&mut hazards));
     assert_eq!(found, None, "only checks at hand have points");
 }
 
 #[test]
 fn current_in_a_conductor_to_be_lifted_refuses_until_a_clamp_shows_none() {
-    let lift = check("n-n", "c1", r#"{"open": ["c1.breaker"], "lift": ["c1.N@board"]}"#, insulation(&["c1.N"], &["c1.PE"]));
-    let clamp = check("clamp", "c1", r#"{"open": ["c1.breaker"]}"#, amps("c1.N@board"));
+    let lift = check(
+        "n-n",
+        "c1",
+        r#"{"open": ["c1.breaker"], "lift": ["c1.N@board"]}"#,
+        insulation(&["c1.N"], &["c1.PE"]),
+    );
+    let clamp = check(
+        "clamp",
+        "c1",
+        r#"{"open": ["c1.breaker"]}"#,
+        amps("c1.N@board"),
+    );
     let run = |visit: &Visit| {
         let mut book = HazardBook::new();
         let body = body();
         let worlds = [world("borrowed neutral", 0.1)];
         let mut solver = |_: &World, _: usize, _: &Setup, _: &[Edit], h: &[Hookup]| {
-            h.iter().map(|h| Some(if matches!(h, Hookup::Amps { .. }) { 3.0 } else { 0.0 })).collect()
+            h.iter()
+                .map(|h| {
+                    Some(if matches!(h, Hookup::Amps { .. }) {
+                        3.0
+                    } else {
+                        0.0
+                    })
+                })
+                .collect()
         };
         let mut hazards = Hazards::new(&mut book, &worlds, &body, &mut solver);
         Gate::new(visit.ground()).clear(&lift, &visit.state, Some(&mut hazards))
@@ -135,10 +265,18 @@ fn current_in_a_conductor_to_be_lifted_refuses_until_a_clamp_shows_none() {
     let visit = Visit::new(house(), Vec::new());
     assert!(matches!(run(&visit), Verdict::Refused(r) if r.reason.contains("3.0 A in c1.N@board")));
     let mut visit = Visit::new(house(), vec![clamp.clone()]);
-    let Verdict::Cleared(behind) = run(&visit) else { panic!("behind the clamp") };
-    assert!(behind.open_points().any(|p| p.test.as_deref() == Some("clamp")));
+    let Verdict::Cleared(behind) = run(&visit) else {
+        panic!("behind the clamp")
+    };
+    assert!(
+        behind
+            .open_points()
+            .any(|p| p.test.as_deref() == Some("clamp"))
+    );
     visit.read(&clamp, 0.004);
-    let Verdict::Cleared(free) = run(&visit) else { panic!("clamped") };
+    let Verdict::Cleared(free) = run(&visit) else {
+        panic!("clamped")
+    };
     assert!(free.open_points().all(|p| p.test.is_none()));
 }
 
@@ -150,14 +288,33 @@ fn a_part_called_dead_that_is_not_is_said_and_still_proved() {
     let worlds = [world("borrowed neutral", 0.1)];
     let mut solver = |_: &World, _: usize, s: &Setup, _: &[Edit], h: &[Hookup]| {
         let live = |h: &Hookup| matches!(h, Hookup::Volts { between, .. } if between.contains(&"c1.N".to_owned()));
-        h.iter().map(|h| Some(if !s.open.is_empty() && live(h) { 230.0 } else { 0.0 })).collect()
+        h.iter()
+            .map(|h| {
+                Some(if !s.open.is_empty() && live(h) {
+                    230.0
+                } else {
+                    0.0
+                })
+            })
+            .collect()
     };
     let mut hazards = Hazards::new(&mut book, &worlds, &body, &mut solver);
-    let dead = check("ins", "c1", r#"{"open": ["c1.breaker"]}"#, insulation(&["c1.L"], &["c1.PE"]));
+    let dead = check(
+        "ins",
+        "c1",
+        r#"{"open": ["c1.breaker"]}"#,
+        insulation(&["c1.L"], &["c1.PE"]),
+    );
     let verdict = Gate::new(visit.ground()).clear(&dead, &visit.state, Some(&mut hazards));
-    let Verdict::Cleared(cleared) = verdict else { panic!("the prove-dead point covers it") };
+    let Verdict::Cleared(cleared) = verdict else {
+        panic!("the prove-dead point covers it")
+    };
     assert!(cleared.hazard().is_some_and(|text| text.contains("230 V")));
-    assert!(cleared.open_points().any(|p| p.wants.iter().any(|w| w.between.contains(&"c1.N".to_owned()))));
+    assert!(cleared.open_points().any(|p| {
+        p.wants
+            .iter()
+            .any(|w| w.between.contains(&"c1.N".to_owned()))
+    }));
 }
 
 #[test]
@@ -171,7 +328,10 @@ fn the_body_takes_more_current_the_higher_the_touch() {
     let soft = body.touch(230.0, 100_000.0);
     assert!(soft.volts < 3.0 && (soft.amps - 230.0 / 101_175.0).abs() < 1e-6);
     let touch = body.touch(100.0, 500.0);
-    assert!((touch.volts - 100.0 * body.ohms(touch.volts) / (500.0 + body.ohms(touch.volts))).abs() < 1e-9);
+    assert!(
+        (touch.volts - 100.0 * body.ohms(touch.volts) / (500.0 + body.ohms(touch.volts))).abs()
+            < 1e-9
+    );
 }
 
 #[test]

@@ -39,7 +39,9 @@ pub fn house() -> Site {
 
 /// A site from its file.
 pub fn site(text: &str) -> Site {
-    load_str(text, &Known::contract()).expect("the test's site file is sound").0
+    load_str(text, &Known::contract())
+        .expect("the test's site file is sound")
+        .0
 }
 
 /// The numbers of the rules as the tests assume them.
@@ -66,7 +68,10 @@ pub fn setup(text: &str) -> Setup {
 
 /// A check; energised unless it is a dead quantity or its first place is switched off and only looked at.
 pub fn check(test: &str, at: &str, setup_text: &str, hookup: Hookup) -> Check {
-    let dead = matches!(hookup, Hookup::Insulation { .. } | Hookup::Continuity { .. });
+    let dead = matches!(
+        hookup,
+        Hookup::Insulation { .. } | Hookup::Continuity { .. }
+    );
     Check {
         test: test.to_owned(),
         at: at.to_owned(),
@@ -95,32 +100,53 @@ pub fn pair(a: &str, b: &str) -> [String; 2] {
 }
 
 pub fn volts(a: &str, b: &str) -> Hookup {
-    Hookup::Volts { between: pair(a, b), meter: None }
+    Hookup::Volts {
+        between: pair(a, b),
+        meter: None,
+    }
 }
 
 pub fn low_z(a: &str, b: &str) -> Hookup {
-    Hookup::Volts { between: pair(a, b), meter: Some(Meter::Named(MeterWord::LowZ)) }
+    Hookup::Volts {
+        between: pair(a, b),
+        meter: Some(Meter::Named(MeterWord::LowZ)),
+    }
 }
 
 pub fn loop_test(a: &str, b: &str, amps: Option<f64>) -> Hookup {
-    Hookup::Loop { between: pair(a, b), amps }
+    Hookup::Loop {
+        between: pair(a, b),
+        amps,
+    }
 }
 
 pub fn insulation(a: &[&str], b: &[&str]) -> Hookup {
     let group = |terminals: &[&str]| terminals.iter().map(|t| (*t).to_owned()).collect();
-    Hookup::Insulation { between: [group(a), group(b)], test_volts: 500.0 }
+    Hookup::Insulation {
+        between: [group(a), group(b)],
+        test_volts: 500.0,
+    }
 }
 
 pub fn continuity(a: &str, b: &str) -> Hookup {
-    Hookup::Continuity { between: pair(a, b) }
+    Hookup::Continuity {
+        between: pair(a, b),
+    }
 }
 
 pub fn amps(end: &str) -> Hookup {
-    Hookup::Amps { around: vec![end.to_owned()] }
+    Hookup::Amps {
+        around: vec![end.to_owned()],
+    }
 }
 
 pub fn proof(what: &str, most: f64) -> Proof {
-    Proof { what: what.to_owned(), least: None, most: Some(most), word: None }
+    Proof {
+        what: what.to_owned(),
+        least: None,
+        most: Some(most),
+        word: None,
+    }
 }
 
 /// A visit: a site, its checks, the state so far.
@@ -134,11 +160,21 @@ pub struct Visit {
 
 impl Visit {
     pub fn new(site: Site, catalogue: Vec<Check>) -> Self {
-        Self { site, numbers: numbers(), catalogue, state: State::new(), entry: 0 }
+        Self {
+            site,
+            numbers: numbers(),
+            catalogue,
+            state: State::new(),
+            entry: 0,
+        }
     }
 
     pub fn ground(&self) -> Ground<'_> {
-        Ground { site: &self.site, numbers: &self.numbers, catalogue: &self.catalogue }
+        Ground {
+            site: &self.site,
+            numbers: &self.numbers,
+            catalogue: &self.catalogue,
+        }
     }
 
     pub fn verdict(&self, check: &Check) -> Verdict {
@@ -157,27 +193,42 @@ impl Visit {
     }
 
     pub fn open(&self, check: &Check) -> Vec<String> {
-        self.points(check).into_iter().filter(|p| !p.done).map(|p| p.point).collect()
+        self.points(check)
+            .into_iter()
+            .filter(|p| !p.done)
+            .map(|p| p.point)
+            .collect()
     }
 
     pub fn apply(&mut self, event: &StateEvent<'_>) {
-        let ground = Ground { site: &self.site, numbers: &self.numbers, catalogue: &self.catalogue };
+        let ground = Ground {
+            site: &self.site,
+            numbers: &self.numbers,
+            catalogue: &self.catalogue,
+        };
         self.state.apply(&ground, event);
     }
 
     /// Does one point with 0 V wherever it wants a reading.
     pub fn done(&mut self, point: &HoldPoint) {
         self.entry += 1;
-        let volts: BTreeMap<String, f64> = point.wants.iter().map(|w| (w.name.clone(), 0.0)).collect();
+        let volts: BTreeMap<String, f64> =
+            point.wants.iter().map(|w| (w.name.clone(), 0.0)).collect();
         assert_eq!(State::judge(point, &volts), Ok(()));
         let entry = self.entry;
-        self.apply(&StateEvent::PointDone { point, volts: &volts, entry });
+        self.apply(&StateEvent::PointDone {
+            point,
+            volts: &volts,
+            entry,
+        });
     }
 
     /// Does every open point in order.
     pub fn do_all(&mut self, check: &Check) {
         for _ in 0..30 {
-            let Some(point) = self.points(check).into_iter().find(|p| !p.done) else { return };
+            let Some(point) = self.points(check).into_iter().find(|p| !p.done) else {
+                return;
+            };
             assert!(point.test.is_none(), "{} is done by a reading", point.point);
             self.done(&point);
         }
@@ -185,12 +236,18 @@ impl Visit {
     }
 
     pub fn may_read(&self, check: &Check) -> Result<(), ReadingStop> {
-        Gate::new(self.ground()).may_read(check, &self.state, None).map(|_| ())
+        Gate::new(self.ground())
+            .may_read(check, &self.state, None)
+            .map(|_| ())
     }
 
     pub fn read(&mut self, check: &Check, value: f64) {
         self.entry += 1;
         let entry = self.entry;
-        self.apply(&StateEvent::Reading { check, value: &ParsedValue::Value { value }, entry });
+        self.apply(&StateEvent::Reading {
+            check,
+            value: &ParsedValue::Value { value },
+            entry,
+        });
     }
 }

@@ -4,8 +4,8 @@ use super::*;
 use crate::checks::catalogue;
 use crate::knowledge::Knowledge;
 use crate::network::{Edit, Network};
-use crate::safety::{Body, CircuitSimulator, Drawn, HazardBook, Hazards, Raised, World};
 use crate::safety::Assessment;
+use crate::safety::{Body, CircuitSimulator, Drawn, HazardBook, Hazards, Raised, World};
 use crate::site::embedded;
 
 struct Real {
@@ -16,22 +16,36 @@ struct Real {
 
 fn real(name: &str) -> Real {
     let knowledge = Knowledge::embedded().expect("knowledge");
-    let site = load_str(embedded(name).expect("a site"), &Known::contract()).expect("sound").0;
+    let site = load_str(embedded(name).expect("a site"), &Known::contract())
+        .expect("sound")
+        .0;
     let network = Network::new(&site, &knowledge).expect("a circuit");
     let checks = catalogue(&knowledge, &network, &site).expect("checks");
     let body = Body::from_rows(&knowledge.bodies, "wet", 5.0).expect("a body");
     let mut visit = Visit::new(site, checks);
     visit.numbers = knowledge.safety.clone();
-    Real { visit, network, body }
+    Real {
+        visit,
+        network,
+        body,
+    }
 }
 
 fn lost(branch: &str) -> Vec<Edit> {
-    vec![Edit::Series { branch: branch.to_owned(), ohms: f64::INFINITY }]
+    vec![Edit::Series {
+        branch: branch.to_owned(),
+        ohms: f64::INFINITY,
+    }]
 }
 
 fn assess(real: &Real, check: &Check, edits: Vec<Edit>) -> Assessment {
     let mut book = HazardBook::new();
-    let worlds = [World { id: "w".to_owned(), says: "it is so".to_owned(), p: 0.2, draws: 1 }];
+    let worlds = [World {
+        id: "w".to_owned(),
+        says: "it is so".to_owned(),
+        p: 0.2,
+        draws: 1,
+    }];
     let mut simulator = CircuitSimulator::new(&real.network);
     let mut theta = real.network.params.points();
     for (path, id) in &real.network.params.by_path {
@@ -44,27 +58,48 @@ fn assess(real: &Real, check: &Check, edits: Vec<Edit>) -> Assessment {
 }
 
 fn hookup_check(real: &Real, pick: impl Fn(&Check) -> bool) -> Check {
-    real.visit.catalogue.iter().find(|c| pick(c)).expect("such a check").clone()
+    real.visit
+        .catalogue
+        .iter()
+        .find(|c| pick(c))
+        .expect("such a check")
+        .clone()
 }
 
 #[test]
 fn the_circuit_shows_what_a_loop_test_does_with_the_neutral_lost() {
     let real = real("house");
-    let main = real.visit.site.boards[real.visit.site.main_board].id.clone();
+    let main = real.visit.site.boards[real.visit.site.main_board]
+        .id
+        .clone();
     let at_board = |c: &Check, limit: f64, above: bool| match &c.hookup {
         Hookup::Loop { between, amps } => {
-            *between == pair(&format!("{main}.L"), &format!("{main}.N")) && (amps.unwrap_or(10.0) > limit) == above
+            *between == pair(&format!("{main}.L"), &format!("{main}.N"))
+                && (amps.unwrap_or(10.0) > limit) == above
         }
         _ => false,
     };
     let full = hookup_check(&real, |c| at_board(c, 1.0, true));
     let small = hookup_check(&real, |c| at_board(c, 1.0, false));
-    let Some(Raised { volts, local: false, .. }) = assess(&real, &full, lost("service.N")).touch else {
+    let Some(Raised {
+        volts,
+        local: false,
+        ..
+    }) = assess(&real, &full, lost("service.N")).touch
+    else {
         panic!("taps go up")
     };
     assert!(volts > 50.0, "{volts} V");
-    assert_eq!(assess(&real, &full, Vec::new()).touch, None, "a sound neutral");
-    assert_eq!(assess(&real, &small, lost("service.N")).touch, None, "15 mA");
+    assert_eq!(
+        assess(&real, &full, Vec::new()).touch,
+        None,
+        "a sound neutral"
+    );
+    assert_eq!(
+        assess(&real, &small, lost("service.N")).touch,
+        None,
+        "15 mA"
+    );
 }
 
 #[test]
@@ -80,23 +115,46 @@ fn every_check_of_the_sites_is_cleared_or_refused_with_a_reason() {
                     let mut unique = ids.clone();
                     unique.sort();
                     unique.dedup();
-                    assert_eq!(ids.len(), unique.len(), "{name} {} {}: {ids:?}", check.test, check.at);
+                    assert_eq!(
+                        ids.len(),
+                        unique.len(),
+                        "{name} {} {}: {ids:?}",
+                        check.test,
+                        check.at
+                    );
                     for want in found.points().iter().flat_map(|p| &p.wants) {
                         for terminal in &want.between {
                             let known = real.network.circuit.terminal(terminal).is_ok();
-                            assert!(known, "{name} {} {}: no terminal {terminal}", check.test, check.at);
+                            assert!(
+                                known,
+                                "{name} {} {}: no terminal {terminal}",
+                                check.test, check.at
+                            );
                         }
                     }
                     for point in found.points() {
-                        let setup = real.network.circuit.switching(&point.setup, crate::network::Unnamed::Off);
-                        assert!(setup.is_ok(), "{name} {} {}: {:?}", check.test, check.at, setup.err());
+                        let setup = real
+                            .network
+                            .circuit
+                            .switching(&point.setup, crate::network::Unnamed::Off);
+                        assert!(
+                            setup.is_ok(),
+                            "{name} {} {}: {:?}",
+                            check.test,
+                            check.at,
+                            setup.err()
+                        );
                     }
                 }
                 Verdict::Refused(refusal) => assert!(!refusal.reason.is_empty()),
                 Verdict::Held { why, .. } => panic!("{name} {}: held, {why}", check.test),
             }
         }
-        assert!(cleared * 10 > real.visit.catalogue.len() * 9, "{name}: {cleared} of {}", real.visit.catalogue.len());
+        assert!(
+            cleared * 10 > real.visit.catalogue.len() * 9,
+            "{name}: {cleared} of {}",
+            real.visit.catalogue.len()
+        );
     }
 }
 
@@ -116,15 +174,29 @@ fn every_cleared_check_can_be_reached_by_its_points() {
             rest.push(format!("{} {}", check.test, check.at));
             continue;
         };
-        if visit.points(check).iter().any(|p| p.test.is_some() && !p.done) {
+        if visit
+            .points(check)
+            .iter()
+            .any(|p| p.test.is_some() && !p.done)
+        {
             rest.push(format!("{} {}", check.test, check.at));
             continue;
         }
         visit.do_all(check);
         assert_eq!(visit.may_read(check), Ok(()), "{} {}", check.test, check.at);
-        let again: Vec<String> = visit.points(check).iter().map(|p| p.point.clone()).collect();
+        let again: Vec<String> = visit
+            .points(check)
+            .iter()
+            .map(|p| p.point.clone())
+            .collect();
         visit.read(check, 1.0);
-        assert!(visit.open(check).is_empty(), "{} {}: {again:?} then {:?}", check.test, check.at, visit.open(check));
+        assert!(
+            visit.open(check).is_empty(),
+            "{} {}: {again:?} then {:?}",
+            check.test,
+            check.at,
+            visit.open(check)
+        );
     }
     assert!(rest.len() * 20 < real.visit.catalogue.len(), "{rest:?}");
 }
