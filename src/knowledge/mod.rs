@@ -1,9 +1,11 @@
 //! What the trade knows, as data: fault kinds, checks, equipment, symptoms, limits, instruments.
 
 mod braces;
+mod calibration;
 mod diagnose;
 mod issue;
 mod library;
+pub mod list;
 mod parse;
 pub mod procedure;
 pub mod records;

@@ -6,7 +6,7 @@ use toml::de::{DeTable, DeValue};
 
 use super::issue::Issue;
 use super::records::*;
-use super::source::Files;
+use super::source::{File, Files};
 
 /// A record with the place it was read from.
 #[derive(Clone, Debug)]
@@ -113,7 +113,9 @@ const TABLES: &[&str] = &[
 pub fn parse(files: &Files) -> (Parsed<'_>, Vec<Issue>) {
     let mut parsed = Parsed::default();
     let mut issues = Vec::new();
-    for file in files.values() {
+    let (added, built_in): (Vec<&File>, Vec<&File>) = files.values().partition(|file| file.added);
+    // Of two rows with one name the added one is to blame.
+    for file in built_in.into_iter().chain(added) {
         match std::str::from_utf8(&file.bytes) {
             Ok(text) => parse_file(&file.shown, text, &mut parsed, &mut issues),
             Err(e) => {

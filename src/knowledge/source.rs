@@ -17,6 +17,8 @@ pub struct File {
     pub shown: String,
     /// Its bytes.
     pub bytes: Vec<u8>,
+    /// Whether it came in from a folder.
+    pub added: bool,
 }
 
 /// All files by relative path with `/`.
@@ -38,6 +40,7 @@ fn collect(dir: &Dir<'_>, into: &mut Files) {
                 File {
                     shown: format!("<built-in>/{path}"),
                     bytes: file.contents().to_vec(),
+                    added: false,
                 },
             );
         }
@@ -81,6 +84,7 @@ fn walk(folder: &Path, prefix: &str, files: &mut Files) -> Result<(), KnowledgeE
                 File {
                     shown: path.display().to_string(),
                     bytes,
+                    added: true,
                 },
             );
         }
@@ -111,6 +115,7 @@ mod tests {
         File {
             shown: String::new(),
             bytes: text.as_bytes().to_vec(),
+            added: false,
         }
     }
 
