@@ -6,7 +6,7 @@ use super::expand::{Filler, Miss};
 use super::select::{Instance, instances};
 use crate::knowledge::{CheckForm, Hookup, Knowledge, Setup, SourceMode};
 use crate::network::{Network, Unnamed};
-use crate::site::{Site, holds, places};
+use crate::site::{Site, Spot, ends, holds};
 
 /// A mistake of the knowledge files that a site brings out.
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
@@ -77,28 +77,7 @@ fn misfit(check: &Check, network: &Network, site: &Site) -> Option<String> {
 
 /// Whether a look has such a place (contract §3, `seen`).
 fn can_be_looked_at(at: &str, site: &Site) -> bool {
-    let place = [
-        "service",
-        "point",
-        "circuit",
-        "board",
-        "bond",
-        "electrode",
-        "equipment",
-    ]
-    .iter()
-    .any(|class| places(site, class).iter().any(|place| place.id == at));
-    let earthing = |board: &str| {
-        site.board_index(board)
-            .and_then(|b| site.boards.get(b)?.earthing.as_ref())
-    };
-    place
-        || at
-            .strip_suffix(".link")
-            .is_some_and(|board| earthing(board).is_some_and(|e| e.link))
-        || at
-            .strip_suffix(".main-earth")
-            .is_some_and(|board| earthing(board).is_some_and(|e| e.main_earth.is_some()))
+    Spot::read(site, at).is_some() || ends(site).contains(at)
 }
 
 fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError> {
@@ -188,7 +167,6 @@ fn sources_off(mut setup: Setup, hookup: &Hookup, site: &Site) -> Setup {
 
 /// Where the person stands: the point, or the board, or the bond or electrode itself.
 fn stand(instance: &Instance, site: &Site) -> String {
-    use crate::site::Spot;
     let place = &instance.place;
     match place.spot {
         Spot::Bond(_) | Spot::Electrode(_) => place.id.clone(),

@@ -6,7 +6,7 @@
 
 use super::select::Instance;
 use crate::knowledge::{HoldForm, Hookup, Load, Proof, Setup, UnplugSet, fill, words};
-use crate::site::{Feed, Phase, Site, lines_of};
+use crate::site::{Feed, Phase, Site, lines_of, name_of};
 
 /// Why an instance was not filled.
 #[derive(Clone, Debug, PartialEq)]
@@ -52,21 +52,9 @@ impl Filler<'_> {
     }
 
     fn name(&self) -> String {
-        let place = self.instance.place.name(self.site);
-        let circuit = |id: &str| {
-            let (b, c) = self.site.circuit_index(id)?;
-            Some(self.site.boards.get(b)?.circuits.get(c)?.name.clone())
-        };
         match self.instance.extra.as_slice() {
-            [("a", a), ("b", b)] => {
-                format!(
-                    "{} and {}",
-                    circuit(a).unwrap_or_default(),
-                    circuit(b).unwrap_or_default()
-                )
-            }
-            [("conductor", line)] => format!("{place}, {line}"),
-            _ => place,
+            [("conductor", line)] => format!("{}, {line}", self.instance.place.name(self.site)),
+            _ => name_of(self.site, &self.instance.at),
         }
     }
 

@@ -95,11 +95,11 @@ fn selectors_choose_their_places() {
     assert_eq!(of("plug-equipment", "{at}"), ["kettle"]);
     assert_eq!(of("electrode", "{at}"), ["electrode", "shed.electrode"]);
     assert_eq!(of("main-line", "{at}"), Vec::<String>::new());
-    assert_eq!(
-        of("point", "{rcd}.x"),
-        Vec::<String>::new(),
-        "no such place: left out"
+    let holds = made(
+        &s,
+        "id = \"x\"\neach = \"circuit\"\nhookup = { quantity = \"holds\", device = \"{rcd}\" }",
     );
+    assert_eq!(ats(&holds), ["c1", "c2"], "hot water has no RCD");
 }
 
 #[test]
@@ -285,4 +285,37 @@ fn instruments_and_leave_decide_what_is_available() {
             .unwrap_err()
             .contains("service.fuse")
     );
+}
+
+#[test]
+fn every_check_of_knowledge_fits_the_circuits_of_the_embedded_sites() {
+    let knowledge = Knowledge::embedded().unwrap();
+    for name in crate::site::embedded_names() {
+        let s = load_str(
+            crate::site::embedded(name).unwrap(),
+            &Known::from(&knowledge),
+        )
+        .unwrap()
+        .0;
+        let network = Network::new(&s, &knowledge).unwrap();
+        let told = misfits(&knowledge, &network, &s).unwrap();
+        assert!(
+            told.is_empty(),
+            "{name}: {}",
+            told.iter()
+                .map(ToString::to_string)
+                .collect::<Vec<_>>()
+                .join("\n")
+        );
+        let checks = catalogue(&knowledge, &network, &s).unwrap();
+        if name == "house" {
+            assert!((300..1200).contains(&checks.len()), "{}", checks.len());
+        }
+        let keys: BTreeSet<_> = checks.iter().map(Check::key).collect();
+        assert_eq!(
+            keys.len(),
+            checks.len(),
+            "{name}: test and place are unique together"
+        );
+    }
 }

@@ -84,10 +84,17 @@ pub(crate) fn build(
                         farads,
                     }
                 }
-                EditForm::Swap { at, conductors } => Edit::Swap {
-                    at: text(at)?,
-                    conductors: conductors.clone(),
-                },
+                EditForm::Swap { at, conductors } => {
+                    let at = text(at)?;
+                    let line_of = |c: &String| {
+                        let terminal = site.on_line(&format!("{at}.{c}"), Some(&line));
+                        terminal.rsplit('.').next().unwrap_or(c).to_owned()
+                    };
+                    Edit::Swap {
+                        conductors: [line_of(&conductors[0]), line_of(&conductors[1])],
+                        at,
+                    }
+                }
                 EditForm::SwapService {} => Edit::SwapService,
                 EditForm::Move { end, to } => match to {
                     Amount::Word(to) => Edit::Move {

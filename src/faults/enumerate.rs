@@ -2,7 +2,8 @@
 //!
 //! A kind whose far end is a point of another circuit would give every pair of points. One pair of points
 //! stands for each pair of circuits, the two whose cable lengths differ least, since what is repaired,
-//! the place where two neutrals meet, is looked for along both cables anyway.
+//! the place where two neutrals meet, is looked for along both cables anyway. Conditions are about `at`;
+//! `other-bar` is about both ends, and the nearest point is always taken.
 
 use std::collections::{BTreeMap, BTreeSet};
 
@@ -203,51 +204,67 @@ fn to_bars(site: &Site, at: &[Place]) -> Vec<End> {
     out
 }
 
-/// One representative pair of points for each pair of circuits: the two nearest in cable length.
+/// For each pair of circuits one pair of points, the two nearest in cable length; both ways round
+/// unless the fault treats its ends alike.
 fn to_other_circuits(kind: &FaultKind, site: &Site, at: &[Place]) -> Vec<End> {
-    let of = |b: usize, c: usize| -> Vec<&Place> {
-        at.iter()
-            .filter(|p| p.circuit(site) == Some((b, c)))
-            .collect()
+    let mut from: BTreeMap<(usize, usize), Vec<&Place>> = BTreeMap::new();
+    let mut onto: BTreeMap<(usize, usize), Vec<&Place>> = BTreeMap::new();
+    let targets = places(site, "point");
+    let sort = |list: &mut BTreeMap<_, Vec<_>>, place| {
+        list.entry(place_circuit(site, place))
+            .or_default()
+            .push(place);
     };
+    at.iter().for_each(|place| sort(&mut from, place));
+    targets.iter().for_each(|place| sort(&mut onto, place));
     let other_bar = kind.only.iter().any(|word| word == "other-bar");
-    let mut nearest = Vec::new();
-    let mut partners: BTreeMap<(usize, usize), usize> = BTreeMap::new();
-    for (b, c, d) in circuit_pairs(site) {
+    let nearest = |c: (usize, usize), d: (usize, usize)| -> Option<(Place, Place)> {
         let metres = |p: &Place| p.point(site).map_or(0.0, |p| site.point(p).metres);
         let mut best: Option<(f64, &Place, &Place)> = None;
-        for p in of(b, c) {
-            for q in of(b, d) {
+        for &p in from.get(&c)? {
+            for &q in onto.get(&d)? {
                 let apart = (metres(p) - metres(q)).abs();
-                if (!other_bar || p.bus(site) != q.bus(site))
-                    && best.is_none_or(|(least, ..)| apart < least)
-                {
+                if best.is_none_or(|(least, ..)| apart < least) {
                     best = Some((apart, p, q));
                 }
             }
         }
-        if let Some((_, p, q)) = best {
-            nearest.push(((b, c), p, (b, d), q));
-            *partners.entry((b, c)).or_default() += 1;
-            *partners.entry((b, d)).or_default() += 1;
-        }
-    }
-    let share = |(b, c): (usize, usize)| {
-        of(b, c).len() as f64 / partners.get(&(b, c)).map_or(1.0, |n| *n as f64)
+        let (_, p, q) = best.filter(|(_, p, q)| !other_bar || p.bus(site) != q.bus(site))?;
+        Some((p.clone(), q.clone()))
     };
-    // A fault that treats both ends alike is the same from either.
+    let mut found = Vec::new();
+    let mut partners: BTreeMap<(usize, usize), usize> = BTreeMap::new();
+    for (b, c, d) in circuit_pairs(site) {
+        let (c, d) = ((b, c), (b, d));
+        let both = [(c, nearest(c, d)), (d, nearest(d, c))];
+        for (circuit, way) in &both {
+            *partners.entry(*circuit).or_default() += usize::from(way.is_some());
+        }
+        found.push(both);
+    }
+    let share = |c: &(usize, usize)| {
+        let points = from.get(c).map_or(0, Vec::len);
+        points as f64 / partners.get(c).map_or(1, |n| (*n).max(1)) as f64
+    };
     let alike = kind
         .edits
         .iter()
         .all(|e| matches!(e, EditForm::Shunt { .. }));
     let mut out = Vec::new();
-    for (c, p, d, q) in nearest {
-        if alike {
-            out.push((p.clone(), Some(q.id.clone()), share(c) + share(d)));
-        } else {
-            out.push((p.clone(), Some(q.id.clone()), share(c)));
-            out.push((q.clone(), Some(p.id.clone()), share(d)));
+    for ways in found {
+        let made = ways
+            .into_iter()
+            .filter_map(|(c, way)| way.map(|(p, q)| (p, Some(q.id), share(&c))));
+        let mut made: Vec<End> = made.collect();
+        if alike && made.len() == 2 {
+            let other = made.pop();
+            made[0].2 += other.map_or(0.0, |end| end.2);
         }
+        out.extend(made);
     }
     out
+}
+
+fn place_circuit(site: &Site, place: &Place) -> (usize, usize) {
+    place.circuit(site).unwrap_or((usize::MAX, usize::MAX))
 }

@@ -363,3 +363,50 @@ fn says_it_in_the_words_of_the_site() {
         "earth open at bench (kitchen sockets), and leak at bed (bedroom sockets)"
     );
 }
+
+#[test]
+fn every_fault_of_knowledge_has_a_circuit_on_the_embedded_sites() {
+    let k = Knowledge::embedded().unwrap();
+    for name in crate::site::embedded_names() {
+        let s = load_str(crate::site::embedded(name).unwrap(), &Known::from(&k))
+            .unwrap()
+            .0;
+        let network = Network::new(&s, &k).unwrap();
+        let space = enumerate(&k, &s).unwrap();
+        if name == "house" {
+            assert!(
+                (400..900).contains(&space.singles.len()),
+                "{}",
+                space.singles.len()
+            );
+            let borrowed = space
+                .singles
+                .iter()
+                .find(|h| h.id.starts_with("neutral-borrowed@"))
+                .unwrap();
+            let twin = space
+                .singles
+                .iter()
+                .find(|h| h.id.starts_with("neutrals-bridged@") && h.group == borrowed.group);
+            assert!(
+                twin.is_some(),
+                "{} is looked for with what joins the same circuits",
+                borrowed.id
+            );
+        }
+        for h in &space.singles {
+            describe(&k, &s, &h.faults).unwrap();
+            repair_text(&k, &s, &h.faults).unwrap();
+            match edits(&k, &s, &h.faults) {
+                Ok(made) => drop(
+                    network
+                        .edited(&made)
+                        .unwrap_or_else(|e| panic!("{name} {}: {e}", h.id)),
+                ),
+                Err(error) => {
+                    assert_eq!(error.code(), "not-predictable", "{name} {}: {error}", h.id)
+                }
+            }
+        }
+    }
+}

@@ -4,7 +4,7 @@ use super::error::FaultError;
 use super::fault::Fault;
 use crate::knowledge::{FaultKind, fill, words};
 use crate::quantity::suggest::nearest;
-use crate::site::{Phase, Place, Site, place};
+use crate::site::{Phase, Place, Site, Spot, name_of, places};
 
 /// The place of a fault and the terminal or point of its `to`, both checked.
 ///
@@ -84,18 +84,22 @@ pub(crate) fn checked(
 }
 
 fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<Place, FaultError> {
-    place::find(site, classes, id).ok_or_else(|| {
-        let fit: Vec<Place> = classes
-            .iter()
-            .flat_map(|c| place::places(site, c))
-            .collect();
-        FaultError::UnknownPlace {
-            kind: kind.kind.clone(),
-            place: id.to_owned(),
-            why: format!("that is no {} of this site", classes.join(" or ")),
-            near: nearest(id, fit.iter().map(|p| p.id.as_str()), 3),
-        }
-    })
+    let fits = |spot: &Spot| classes.iter().any(|class| class == spot.class());
+    Spot::read(site, id)
+        .filter(fits)
+        .map(|spot| Place {
+            id: id.to_owned(),
+            spot,
+        })
+        .ok_or_else(|| {
+            let fit: Vec<Place> = classes.iter().flat_map(|c| places(site, c)).collect();
+            FaultError::UnknownPlace {
+                kind: kind.kind.clone(),
+                place: id.to_owned(),
+                why: format!("that is no {} of this site", classes.join(" or ")),
+                near: nearest(id, fit.iter().map(|p| p.id.as_str()), 3),
+            }
+        })
 }
 
 /// The neutral bars of a board, `msb.N` and `msb.rcd1.N`, as places of their terminals.
@@ -150,7 +154,8 @@ pub(crate) fn filled(
 ) -> Result<String, FaultError> {
     let lookup = |name: &str| match name {
         "to" => to.map(|t| t.id.clone()),
-        "to-name" => to.map(|t| to_name(site, t)),
+        "to-name" => to.map(|t| name_of(site, &t.id)),
+        "circuits" => to.and_then(|t| both_circuits(site, at, t)),
         "conductor" => Some(conductor(kind, site, fault, at)),
         "conductor-name" => Some(site.conductor_name(&conductor(kind, site, fault, at))),
         _ => match name.strip_prefix("to-") {
@@ -183,10 +188,10 @@ pub(crate) fn conductor(kind: &FaultKind, site: &Site, fault: &Fault, at: &Place
         .unwrap_or_else(|| "L".to_owned())
 }
 
-fn to_name(site: &Site, to: &Place) -> String {
-    if to.id.ends_with(".N") {
-        format!("the bar {}", to.id)
-    } else {
-        to.name(site)
-    }
+/// The circuits of both ends in the file's order, so that it is one repair from either end.
+fn both_circuits(site: &Site, at: &Place, to: &Place) -> Option<String> {
+    let mut both = [at.circuit(site)?, to.circuit(site)?];
+    both.sort_unstable();
+    let id = |(b, c): (usize, usize)| Some(site.boards.get(b)?.circuits.get(c)?.id.as_str());
+    Some(format!("{} {}", id(both[0])?, id(both[1])?))
 }

@@ -156,6 +156,7 @@ pub const ID_NAMES: &[Meaning] = &[
     ),
     ("circuit", "the place's circuit"),
     ("to-circuit", "the circuit of `to`"),
+    ("circuits", "the circuits of the place and of `to`, in the file's order"),
     (
         "board",
         "the place's board; of a bond, the main board; of a sub-board, the one that feeds it",
@@ -201,6 +202,7 @@ pub const TEXT_NAMES: &[Meaning] = &[
     ),
     ("at-name", "the place as a person calls it"),
     ("to-name", "the other place as a person calls it"),
+    ("conductor-name", "the fault's conductor in the site's words"),
     ("board-name", "the place's board as a person calls it"),
     ("circuit-name", "the place's circuit as a person calls it"),
 ];

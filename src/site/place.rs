@@ -95,14 +95,6 @@ fn each_board(site: &Site, f: impl Fn(usize) -> Vec<Place>) -> Vec<Place> {
     (0..site.boards.len()).flat_map(f).collect()
 }
 
-/// The place of that id among the classes given.
-pub fn find(site: &Site, classes: &[String], id: &str) -> Option<Place> {
-    classes
-        .iter()
-        .flat_map(|class| places(site, class))
-        .find(|place| place.id == id)
-}
-
 impl Place {
     /// The circuit it belongs to, as board and circuit index.
     pub fn circuit(&self, site: &Site) -> Option<(usize, usize)> {
