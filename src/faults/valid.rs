@@ -4,7 +4,7 @@ use super::error::FaultError;
 use super::fault::Fault;
 use crate::knowledge::{FaultKind, fill, words};
 use crate::quantity::suggest::nearest;
-use crate::site::{Phase, Place, Site, Spot, name_of, places};
+use crate::site::{Phase, Place, Site, Spot, name_of, place, places};
 
 /// The place of a fault and the terminal or point of its `to`, both checked.
 ///
@@ -84,22 +84,15 @@ pub(crate) fn checked(
 }
 
 fn find(kind: &FaultKind, site: &Site, classes: &[String], id: &str) -> Result<Place, FaultError> {
-    let fits = |spot: &Spot| classes.iter().any(|class| class == spot.class());
-    Spot::read(site, id)
-        .filter(fits)
-        .map(|spot| Place {
-            id: id.to_owned(),
-            spot,
-        })
-        .ok_or_else(|| {
-            let fit: Vec<Place> = classes.iter().flat_map(|c| places(site, c)).collect();
-            FaultError::UnknownPlace {
-                kind: kind.kind.clone(),
-                place: id.to_owned(),
-                why: format!("that is no {} of this site", classes.join(" or ")),
-                near: nearest(id, fit.iter().map(|p| p.id.as_str()), 3),
-            }
-        })
+    place::find(site, classes, id).ok_or_else(|| {
+        let fit: Vec<Place> = classes.iter().flat_map(|c| places(site, c)).collect();
+        FaultError::UnknownPlace {
+            kind: kind.kind.clone(),
+            place: id.to_owned(),
+            why: format!("that is no {} of this site", classes.join(" or ")),
+            near: nearest(id, fit.iter().map(|p| p.id.as_str()), 3),
+        }
+    })
 }
 
 /// The neutral bars of a board, `msb.N` and `msb.rcd1.N`, as places of their terminals.

@@ -95,6 +95,16 @@ fn each_board(site: &Site, f: impl Fn(usize) -> Vec<Place>) -> Vec<Place> {
     (0..site.boards.len()).flat_map(f).collect()
 }
 
+/// The place of that id, if it is of one of the classes given.
+pub fn find(site: &Site, classes: &[String], id: &str) -> Option<Place> {
+    Spot::read(site, id)
+        .filter(|spot| classes.iter().any(|class| class == spot.class()))
+        .map(|spot| Place {
+            id: id.to_owned(),
+            spot,
+        })
+}
+
 impl Place {
     /// The circuit it belongs to, as board and circuit index.
     pub fn circuit(&self, site: &Site) -> Option<(usize, usize)> {
