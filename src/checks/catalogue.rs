@@ -150,10 +150,11 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
 
 /// Dead readings, and whatever lifts an end, are made with everything off that could feed back.
 fn sources_off(mut setup: Setup, hookup: &Hookup, site: &Site) -> Setup {
-    let dead = matches!(
-        hookup,
-        Hookup::Insulation { .. } | Hookup::Continuity { .. }
-    );
+    let dead = match hookup {
+        Hookup::Insulation { .. } | Hookup::Continuity { .. } => true,
+        Hookup::Seen { .. } => !setup.open.is_empty(),
+        _ => false,
+    };
     if dead || !setup.lift.is_empty() {
         for source in &site.sources {
             setup

@@ -2,46 +2,108 @@
 
 use super::Ground;
 use super::hold::{isolates, isolation};
-use super::places::{conductors_at, place_of};
+use super::places::{conductors_at, mains_of, place_of};
 use super::point::state_key;
 use crate::checks::Check;
-use crate::knowledge::{Hookup, Meter, Setup, UnplugSet, procedure::MeterWord};
+use crate::knowledge::{Hookup, Meter, Setup, SourceMode, UnplugSet, procedure::MeterWord};
 use crate::network::Edit;
 
 /// One state that a check passes through, with what its instrument adds there.
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct Stance {
-    /// Setup.
+    /// Setup, its loads taken out.
     pub setup: Setup,
-    /// Burden of the instrument.
+    /// Loads and the instrument's burden, as resistances.
     pub burden: Vec<Edit>,
     /// Ends that are about to be lifted.
     pub lifting: Vec<String>,
+    /// The instrument's current lasts a fraction of a second: volts count, not the let-go current.
+    pub brief: bool,
+    /// Everything ahead of the boards is open: only what comes from outside can flow.
+    pub dead: bool,
 }
 
 impl Stance {
     /// Equal stances have equal keys.
     pub fn key(&self) -> String {
         let s = &self.setup;
-        let loads: Vec<String> = s
-            .load
-            .iter()
-            .map(|l| format!("{}:{}", l.at, l.watts))
-            .collect();
         let unplug = match &s.unplug {
             UnplugSet::All(_) => "all".to_owned(),
             UnplugSet::These(items) => items.join("+"),
         };
         format!(
-            "{}|{unplug}|{}|{}|{}|{:?}|{:?}|{}",
+            "{}|{unplug}|{}|{}|{:?}|{:?}|{}|{}",
             state_key(s),
             s.on.join("+"),
             s.off.join("+"),
-            loads.join("+"),
             s.provoke,
             self.burden,
-            self.lifting.join("+")
+            self.lifting.join("+"),
+            self.brief
         )
+    }
+
+    /// Amperes that the test adds at most: loads, burdens, equipment switched on; and, on three phases or
+    /// beside a source, what taking away may add.
+    pub fn added_amps(&self, ground: &Ground<'_>, line_amps: f64) -> f64 {
+        let site = ground.site;
+        let volts = site.supply.volts;
+        let shunts: f64 = self
+            .burden
+            .iter()
+            .map(|e| {
+                if let Edit::Shunt { ohms, .. } = e {
+                    volts / ohms
+                } else {
+                    0.0
+                }
+            })
+            .sum();
+        let watts = |id: &String| {
+            site.equipment_index(id)
+                .and_then(|e| site.equipment.get(e))
+                .and_then(|e| e.watts)
+                .unwrap_or(UNKNOWN_WATTS)
+        };
+        let on: f64 = self.setup.on.iter().map(watts).sum::<f64>() / volts;
+        let takes_away = !self.setup.open.is_empty()
+            || !self.setup.unplug.is_empty()
+            || !self.setup.off.is_empty();
+        let unbalances = takes_away && (site.supply.phases == 3 || !site.sources.is_empty());
+        let sources = !self.setup.sources.is_empty() && !site.sources.is_empty();
+        shunts
+            + on
+            + if unbalances || sources {
+                line_amps
+            } else {
+                0.0
+            }
+    }
+}
+
+/// Equipment whose watts the site does not give is taken as the largest on a plug.
+const UNKNOWN_WATTS: f64 = 3600.0;
+
+/// Ends whose lifting parts the earthing or the incoming neutral.
+fn parts_earthing(end: &str) -> bool {
+    [".link", ".main-earth", ".bond", ".main-neutral"]
+        .iter()
+        .any(|suffix| end.ends_with(suffix))
+        || end.contains(".feed")
+}
+
+/// With every main switch of the main board open and every source off.
+pub(super) fn mains_off(ground: &Ground<'_>) -> Setup {
+    let sources = ground
+        .site
+        .sources
+        .iter()
+        .map(|s| (s.id.clone(), SourceMode::Off))
+        .collect();
+    Setup {
+        open: mains_of(ground.site, ground.site.main_board),
+        sources,
+        ..Setup::default()
     }
 }
 
@@ -50,26 +112,41 @@ pub(super) fn stances(ground: &Ground<'_>, check: &Check) -> Vec<Stance> {
     let mut all = Vec::new();
     if isolates(check) {
         let off = isolation(ground, check);
+        let outside = mains_off(ground);
+        let dead = outside.open.iter().all(|main| off.open.contains(main));
         let lift = check.setup.lift.clone();
-        all.push(Stance {
-            setup: off.clone(),
+        let bare = |setup: Setup, lifting: Vec<String>, dead: bool| Stance {
+            setup,
             burden: Vec::new(),
-            lifting: lift.clone(),
-        });
-        if !lift.is_empty() {
-            all.push(Stance {
-                setup: Setup { lift, ..off },
-                burden: Vec::new(),
-                lifting: Vec::new(),
-            });
+            lifting,
+            brief: false,
+            dead,
+        };
+        if dead {
+            // Opening more behind open mains changes nothing: one state serves every such check.
+            all.push(bare(outside, lift.clone(), true));
+        } else {
+            all.push(bare(off.clone(), lift.clone(), false));
+        }
+        if lift.iter().any(|end| parts_earthing(end)) || (!dead && !lift.is_empty()) {
+            all.push(bare(Setup { lift, ..off }, Vec::new(), false));
         }
         if !check.energised {
             return all;
         }
     }
-    let burden = burden(ground, &check.hookup);
+    let instrument = burden(ground, &check.hookup);
+    let brief = !instrument.is_empty() && !matches!(check.hookup, Hookup::Volts { .. });
+    let loads = check
+        .setup
+        .load
+        .iter()
+        .filter_map(|l| load(ground, &l.at, l.watts));
+    let burden: Vec<Edit> = instrument.into_iter().chain(loads).collect();
+    let brief = brief && check.setup.load.is_empty();
     let setup = Setup {
         closed: Vec::new(),
+        load: Vec::new(),
         ..check.setup.clone()
     };
     if setup != Setup::default() || !burden.is_empty() {
@@ -77,9 +154,22 @@ pub(super) fn stances(ground: &Ground<'_>, check: &Check) -> Vec<Stance> {
             setup,
             burden,
             lifting: Vec::new(),
+            brief,
+            dead: false,
         });
     }
     all
+}
+
+/// A load as the resistance that draws its watts at 230 V.
+fn load(ground: &Ground<'_>, at: &str, watts: f64) -> Option<Edit> {
+    let conductors = conductors_at(ground.site, at)?;
+    let line = conductors.lines.first()?.clone();
+    (watts > 0.0).then(|| Edit::Shunt {
+        between: [line, conductors.neutral.unwrap_or_default()],
+        ohms: 230.0 * 230.0 / watts,
+        when: None,
+    })
 }
 
 /// The instrument's path while it measures, as a resistance that draws its current at the line's volts.
@@ -134,14 +224,13 @@ fn rcd_burden(ground: &Ground<'_>, rcd: &str, at: Option<&str>, multiple: f64) -
     }
 }
 
-/// Pairs of touchable metal, each with what it may be touched together with; soil always, and where
-/// equipment stands, pipes and its board's earth bar. The flag: it is the frame of one piece of equipment.
-pub(super) fn touchables(ground: &Ground<'_>) -> Vec<([String; 2], bool)> {
+/// Pairs of metal that many may touch, and soil: earth bars, electrodes, pipes.
+pub(super) fn common_pairs(ground: &Ground<'_>) -> Vec<[String; 2]> {
     let site = ground.site;
     let soil = || "soil".to_owned();
     let mut pairs = Vec::new();
     for (index, board) in site.boards.iter().enumerate() {
-        pairs.push(([format!("{}.PE", board.id), soil()], false));
+        pairs.push([format!("{}.PE", board.id), soil()]);
         if board
             .earthing
             .as_ref()
@@ -152,18 +241,27 @@ pub(super) fn touchables(ground: &Ground<'_>) -> Vec<([String; 2], bool)> {
             } else {
                 format!("{}.electrode", board.id)
             };
-            pairs.push(([top, soil()], false));
+            pairs.push([top, soil()]);
         }
     }
-    for bond in &site.bonds {
-        pairs.push(([format!("{}.pipe", bond.id), soil()], false));
-    }
+    pairs.extend(
+        site.bonds
+            .iter()
+            .map(|bond| [format!("{}.pipe", bond.id), soil()]),
+    );
+    pairs
+}
+
+/// Frames of equipment, each to soil and to the pipes that it does not touch.
+pub(super) fn frame_pairs(ground: &Ground<'_>) -> Vec<[String; 2]> {
+    let site = ground.site;
+    let mut pairs = Vec::new();
     for item in &site.equipment {
         let frame = format!("{}.frame", item.id);
-        pairs.push(([frame.clone(), soil()], true));
+        pairs.push([frame.clone(), "soil".to_owned()]);
         for (index, bond) in site.bonds.iter().enumerate() {
             if !item.touches.contains(&index) {
-                pairs.push(([frame.clone(), format!("{}.pipe", bond.id)], true));
+                pairs.push([frame.clone(), format!("{}.pipe", bond.id)]);
             }
         }
     }

@@ -388,20 +388,29 @@ impl Builder<'_> {
             text.to_owned(),
             Vec::new(),
         );
-        if let Hookup::Holds { device } = &self.check.hookup {
-            let key = format!("keep-clear {device} {}", state_key(&self.check.setup));
-            let text = format!(
-                "Nobody touches anything that {device} feeds, nor pipes, while it is closed and watched. Stand aside."
-            );
-            self.push(
-                Stage::Extra,
-                "keep-clear",
-                &key,
-                &self.check.setup.clone(),
-                text,
-                Vec::new(),
-            );
-        }
+        let through_earth = rules::earth_path(self.check).is_some();
+        let on = &self.check.setup.on;
+        let what = match &self.check.hookup {
+            Hookup::Holds { device } => format!("anything that {device} feeds"),
+            _ if through_earth => format!(
+                "frames or other metal on {}",
+                place.split('.').next().unwrap_or(&place)
+            ),
+            _ if !on.is_empty() => format!("{}, nor metal near it", list(on)),
+            _ => return,
+        };
+        let key = format!("keep-clear {what} {}", state_key(&self.check.setup));
+        let text = format!(
+            "Nobody touches {what} while the test is on. Say so, and stand where you see it."
+        );
+        self.push(
+            Stage::Extra,
+            "keep-clear",
+            &key,
+            &self.check.setup.clone(),
+            text,
+            Vec::new(),
+        );
     }
 
     fn extras(&mut self) {

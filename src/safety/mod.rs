@@ -12,6 +12,7 @@ mod hold;
 mod makesafe;
 pub mod places;
 mod point;
+mod profile;
 mod proof;
 mod rules;
 mod simulate;

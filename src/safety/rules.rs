@@ -412,7 +412,7 @@ pub(super) fn proofs_needed(ground: &Ground<'_>, check: &Check) -> Vec<String> {
 }
 
 /// The place whose protective conductor carries the test's current, if the test drives one through it.
-fn earth_path(check: &Check) -> Option<String> {
+pub(super) fn earth_path(check: &Check) -> Option<String> {
     let through = |between: &[String; 2]| {
         let line = between.iter().find(|t| is_line(t))?;
         let earth = between
@@ -437,12 +437,15 @@ fn earth_path(check: &Check) -> Option<String> {
     }
 }
 
+/// How the proof of a conductor without current begins.
+pub(super) const QUIET: &str = "no current in ";
+
 /// The proof that a conductor to be lifted carries next to nothing once this is open.
 pub(super) fn quiet_proof(end: &str, open: &[String]) -> String {
     let mut open = open.to_vec();
     open.sort();
     open.dedup();
-    format!("no current in {end} with {} open", open.join("+"))
+    format!("{QUIET}{end} with {} open", open.join("+"))
 }
 
 /// The check whose clamp gives the quiet proof of an end in the state in which it is lifted.
@@ -473,13 +476,16 @@ pub(super) fn check_that_proves<'a>(
     check: &Check,
     proof: &str,
 ) -> Option<&'a Check> {
+    // Only such a proof is looked for among the clamps: naming one is work.
+    let quiet = proof.starts_with(QUIET);
     ground
         .catalogue
         .iter()
+        .filter(|c| !c.proves.is_empty() || quiet)
         .filter(|c| (c.test.as_str(), c.at.as_str()) != (check.test.as_str(), check.at.as_str()))
         .filter(|c| {
             c.proves.iter().any(|p| p.what == proof)
-                || proves_quiet(c).is_some_and(|quiet| quiet == proof)
+                || (quiet && proves_quiet(c).is_some_and(|known| known == proof))
         })
         .min_by(|a, b| a.minutes.total_cmp(&b.minutes))
 }

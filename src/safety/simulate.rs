@@ -73,14 +73,15 @@ impl<'a> CircuitSimulator<'a> {
 }
 
 impl Simulator for CircuitSimulator<'_> {
-    fn read(
+    fn read_each(
         &mut self,
         world: &World,
         draw: usize,
         setup: &Setup,
-        test: &[Edit],
+        tests: &[Vec<Edit>],
         hookups: &[Hookup],
-    ) -> Vec<Option<f64>> {
+    ) -> Vec<Vec<Option<f64>>> {
+        let nothing = || vec![vec![None; hookups.len()]; tests.len()];
         self.wire(&world.id, draw);
         let wiring = self
             .wired
@@ -88,7 +89,7 @@ impl Simulator for CircuitSimulator<'_> {
             .and_then(Option::as_ref);
         let drawn = self.draws.get(&world.id).and_then(|draws| draws.get(draw));
         let (Some(wiring), Some(drawn)) = (wiring, drawn) else {
-            return vec![None; hookups.len()];
+            return nothing();
         };
         let values = Values {
             theta: &drawn.theta,
@@ -96,18 +97,21 @@ impl Simulator for CircuitSimulator<'_> {
         };
         let solver = QuickSolver::new(wiring, values);
         let Ok(sw) = wiring.circuit.switching(setup, Unnamed::AsFound) else {
-            return vec![None; hookups.len()];
+            return nothing();
         };
-        let extra: Vec<Extra> = test
-            .iter()
-            .filter_map(|edit| burden(wiring, edit))
-            .collect();
-        let mut running = sw.clone();
-        let phasors = protect::solve(&solver, &mut running, &extra);
-        hookups
-            .iter()
-            .map(|hookup| one(&solver, wiring, &running, &extra, &phasors, hookup))
-            .collect()
+        let shown = |test: &Vec<Edit>| {
+            let extra: Vec<Extra> = test
+                .iter()
+                .filter_map(|edit| burden(wiring, edit))
+                .collect();
+            let mut running = sw.clone();
+            let phasors = protect::solve(&solver, &mut running, &extra);
+            hookups
+                .iter()
+                .map(|hookup| one(&solver, wiring, &running, &extra, &phasors, hookup))
+                .collect()
+        };
+        tests.iter().map(shown).collect()
     }
 }
 

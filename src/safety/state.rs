@@ -6,7 +6,7 @@ use super::Ground;
 use super::places::{parts_neutral, place_of_end};
 use super::point::{HoldPoint, Stage, state_key};
 use super::proof::{Gained, gives, stake_reading};
-use super::rules::proves_quiet;
+use super::rules::{QUIET, proves_quiet};
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Proof, Setup, SourceMode};
 use crate::quantity::{ParsedValue, Word};
@@ -294,8 +294,7 @@ impl State {
             self.dead.clear();
             self.tester = Tester::Unproved;
             self.done.retain(|_, d| d.stage.outlives_state());
-            self.proofs
-                .retain(|what, _| !what.starts_with("no current in "));
+            self.proofs.retain(|what, _| !what.starts_with(QUIET));
         } else if to
             .lift
             .iter()
