@@ -10,20 +10,40 @@ use petgraph::Direction;
 use petgraph::stable_graph::{NodeIndex, StableDiGraph};
 use petgraph::visit::{Dfs, EdgeFiltered, EdgeRef, UndirectedAdaptor};
 
-use super::model::{Board, Feed, Site, SourcePlace};
+use super::lookup::lines_of;
+use super::model::{Board, Feed, Phase, Site, SourcePlace};
 
 /// What joins two parts.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Joint {
-    /// A switching device by its id; it opens the lines, and N where `neutral`.
+    /// A switching device by its id; it opens the lines, and N where `neutral`. Lifting all of `ends` parts it too.
     Device {
         /// Id of contract §2.
         id: String,
         /// Opens N too.
         neutral: bool,
+        /// Line ends landed there, `c1.L@board`.
+        ends: Vec<String>,
     },
-    /// A run of cable, m.
-    Cable(f64),
+    /// A run of cable, m, parted by the `split` of the point where it starts.
+    Cable {
+        /// Length.
+        metres: f64,
+        /// `c1.p1.split`.
+        split: Option<String>,
+    },
+}
+
+impl Joint {
+    fn is_closed(&self, open: &BTreeSet<String>, lifted: &BTreeSet<String>) -> bool {
+        match self {
+            Self::Device { id, ends, .. } => {
+                let parted = !ends.is_empty() && ends.iter().all(|end| lifted.contains(end));
+                !open.contains(id) && !parted
+            }
+            Self::Cable { split, .. } => !split.as_ref().is_some_and(|end| lifted.contains(end)),
+        }
+    }
 }
 
 /// The site as a graph.
@@ -85,13 +105,21 @@ impl Topology {
                 board: from,
                 rcd,
                 metres,
+                phase,
                 ..
             } => {
                 let from = &site.boards[*from].id;
                 let upstream = self.by_id[rcd.as_ref().unwrap_or(from)];
-                let breaker = device(&format!("{}.breaker", board.id), false);
+                let breaker = breaker(&board.id, *phase);
                 let feed = self.under(upstream, &format!("{}.feed", board.id), breaker);
-                self.under(feed, &format!("{}.in", board.id), Joint::Cable(*metres))
+                self.under(
+                    feed,
+                    &format!("{}.in", board.id),
+                    Joint::Cable {
+                        metres: *metres,
+                        split: None,
+                    },
+                )
             }
         };
         for main in &board.mains {
@@ -137,16 +165,26 @@ impl Topology {
             let Some(&upstream) = self.by_id.get(upstream) else {
                 continue;
             };
-            let breaker = device(&format!("{}.breaker", circuit.id), false);
+            let breaker = breaker(&circuit.id, circuit.phase);
             let head = self.under(upstream, &circuit.id, breaker);
             let mut nodes: Vec<NodeIndex> = Vec::with_capacity(circuit.points.len());
             for point in &circuit.points {
-                let (from, at) = match point.from {
-                    Some(i) => (nodes[i], circuit.points[i].metres),
-                    None => (head, 0.0),
+                let (from, at, split) = match point.from {
+                    Some(i) => {
+                        let before = &circuit.points[i];
+                        (
+                            nodes[i],
+                            before.metres,
+                            Some(format!("{}.{}.split", circuit.id, before.id)),
+                        )
+                    }
+                    None => (head, 0.0, None),
                 };
-                let id = format!("{}.{}", circuit.id, point.id);
-                nodes.push(self.under(from, &id, Joint::Cable(point.metres - at)));
+                let cable = Joint::Cable {
+                    metres: point.metres - at,
+                    split,
+                };
+                nodes.push(self.under(from, &format!("{}.{}", circuit.id, point.id), cable));
             }
         }
     }
@@ -205,7 +243,7 @@ impl Topology {
             .filter_map(|n| self.upstream(n).map(|(_, joint)| joint));
         joints
             .filter_map(|joint| match joint {
-                Joint::Device { id, neutral } if *neutral || !with_neutral => Some(id.clone()),
+                Joint::Device { id, neutral, .. } if *neutral || !with_neutral => Some(id.clone()),
                 _ => None,
             })
             .collect()
@@ -260,18 +298,27 @@ impl Topology {
             .filter_map(|n| self.upstream(n));
         Some(
             joints
-                .map(|(_, joint)| if let Joint::Cable(m) = joint { *m } else { 0.0 })
+                .map(|(_, joint)| {
+                    if let Joint::Cable { metres, .. } = joint {
+                        *metres
+                    } else {
+                        0.0
+                    }
+                })
                 .sum(),
         )
     }
 
-    /// Every id whose lines a way of closed devices joins to the network or to one of the `backfeeds` (ids of
-    /// places or sources that feed alone). What is not in it is still to be proved dead.
-    pub fn supplied(&self, open: &BTreeSet<String>, backfeeds: &[&str]) -> BTreeSet<String> {
-        let closed = EdgeFiltered::from_fn(&self.graph, |edge| match edge.weight() {
-            Joint::Device { id, .. } => !open.contains(id),
-            Joint::Cable(_) => true,
-        });
+    /// Every id whose lines a way of closed devices and landed ends joins to the network or to one of the
+    /// `backfeeds` (ids of places or sources that feed alone). What is not in it is still to be proved dead.
+    pub fn supplied(
+        &self,
+        open: &BTreeSet<String>,
+        lifted: &BTreeSet<String>,
+        backfeeds: &[&str],
+    ) -> BTreeSet<String> {
+        let closed =
+            EdgeFiltered::from_fn(&self.graph, |edge| edge.weight().is_closed(open, lifted));
         let both_ways = UndirectedAdaptor(&closed);
         let mut out = BTreeSet::new();
         let starts = std::iter::once("network").chain(backfeeds.iter().copied());
@@ -289,6 +336,20 @@ fn device(id: &str, neutral: bool) -> Joint {
     Joint::Device {
         id: id.to_owned(),
         neutral,
+        ends: Vec::new(),
+    }
+}
+
+/// The breaker of a circuit or submain, with the line ends landed on it.
+fn breaker(of: &str, phase: Phase) -> Joint {
+    let ends = lines_of(phase)
+        .iter()
+        .map(|line| format!("{of}.{line}@board"))
+        .collect();
+    Joint::Device {
+        id: format!("{of}.breaker"),
+        neutral: false,
+        ends,
     }
 }
 
@@ -303,6 +364,10 @@ mod tests {
                 .unwrap()
                 .0,
         )
+    }
+
+    fn set(ids: &[&str]) -> BTreeSet<String> {
+        ids.iter().map(|id| (*id).to_owned()).collect()
     }
 
     #[test]
@@ -371,19 +436,44 @@ mod tests {
     #[test]
     fn an_open_device_leaves_only_what_is_fed_another_way() {
         let t = Topology::new(&samples::small());
-        let all = t.supplied(&BTreeSet::new(), &[]);
+        let all = t.supplied(&set(&[]), &set(&[]), &[]);
         assert!(all.contains("c1.p2") && all.contains("shed"));
-        let open = BTreeSet::from(["rcd1".to_owned()]);
-        let left = t.supplied(&open, &[]);
+        let open = set(&["rcd1"]);
+        let left = t.supplied(&open, &set(&[]), &[]);
         assert!(!left.contains("c1") && left.contains("c2.p1"));
         // A generator on the board keeps all of it alive with the main switch open, but not the service.
         let farm = farm();
-        let open = BTreeSet::from(["main".to_owned()]);
-        assert!(!farm.supplied(&open, &[]).contains("h1.p1"));
-        let fed = farm.supplied(&open, &["gen"]);
+        let open = set(&["main"]);
+        assert!(!farm.supplied(&open, &set(&[]), &[]).contains("h1.p1"));
+        let fed = farm.supplied(&open, &set(&[]), &["gen"]);
         assert!(fed.contains("h1.p1") && fed.contains("shed"));
-        let open = BTreeSet::from(["main".to_owned(), "service.fuse".to_owned()]);
-        assert!(!farm.supplied(&open, &["gen"]).contains("service"));
+        let open = set(&["main", "service.fuse"]);
+        assert!(
+            !farm
+                .supplied(&open, &set(&[]), &["gen"])
+                .contains("service")
+        );
+    }
+
+    #[test]
+    fn a_lifted_end_or_a_cut_parts_what_is_beyond() {
+        let t = Topology::new(&samples::small());
+        let left = t.supplied(&set(&[]), &set(&["c1.L@board"]), &[]);
+        assert!(!left.contains("c1.p1") && left.contains("rcd1"));
+        let left = t.supplied(&set(&[]), &set(&["c1.N@board", "c1.p1.split"]), &[]);
+        assert!(left.contains("c1.p1") && !left.contains("c1.p2") && !left.contains("fridge"));
+        // One line of three lifted leaves two that are fed.
+        let shop = Topology::new(
+            &load_str(embedded("shop").unwrap(), &Known::contract())
+                .unwrap()
+                .0,
+        );
+        assert!(
+            shop.supplied(&set(&[]), &set(&["sales.L1@board"]), &[])
+                .contains("sales")
+        );
+        let all = set(&["sales.L1@board", "sales.L2@board", "sales.L3@board"]);
+        assert!(!shop.supplied(&set(&[]), &all, &[]).contains("sales"));
     }
 
     #[test]
@@ -393,7 +483,7 @@ mod tests {
                 .unwrap()
                 .0;
             let t = Topology::new(&site);
-            let all = t.supplied(&BTreeSet::new(), &[]);
+            let all = t.supplied(&set(&[]), &set(&[]), &[]);
             for (id, spot) in spots(&site) {
                 if matches!(
                     spot.class(),

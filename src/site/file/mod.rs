@@ -2,6 +2,7 @@
 
 mod boards;
 mod circuits;
+mod devices;
 mod error;
 mod feeds;
 mod form;
