@@ -59,6 +59,12 @@ pub(crate) fn instances(
                 )
                 .collect(),
         ),
+        "joint" => {
+            let mut all = places(site, "point");
+            all.extend(places(site, "circuit"));
+            all.extend(only("board", "submain"));
+            plain(all)
+        }
         "inner-point" => plain(
             places(site, "point")
                 .into_iter()

@@ -60,6 +60,7 @@ pub const EACH: &[Meaning] = &[
         "last-point",
         "of each circuit the point farthest from its board",
     ),
+    ("joint", "every point, every circuit's end in its board, every submain's end"),
     ("inner-point", "every point from which another goes on"),
     (
         "split",
