@@ -4,7 +4,7 @@ use super::Session;
 use super::command;
 use super::error::{ErrorCode, SessionError};
 use super::event::{Event, VerdictStands};
-use super::view::{EvidenceAnswer, EvidenceRow, MovedAnswer, RankingAnswer, VerdictView};
+use super::view::{EvidenceAnswer, EvidenceRow, MovedAnswer, OddsView, RankingAnswer, VerdictView};
 
 /// Hypotheses shown when nobody says how many.
 pub const USUAL_COUNT: usize = 10;
@@ -17,6 +17,11 @@ impl Session {
             odds,
             verdict: self.note_verdict(),
         }
+    }
+
+    /// The odds now, nothing noted: so many hypotheses.
+    pub fn odds(&self, count: usize) -> OddsView {
+        self.visit.mind.odds(count)
     }
 
     /// Bits that each entry gives for a hypothesis against the rest.

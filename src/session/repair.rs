@@ -2,6 +2,7 @@
 
 use super::Session;
 use super::command;
+use super::engine::Engine;
 use super::error::{ErrorCode, SessionError};
 use super::event::{Event, RecheckTaken, TestAt};
 use super::limits::{judge, limits};
@@ -59,6 +60,29 @@ impl Session {
     pub fn checks_owed(&mut self) -> Vec<CheckOwed> {
         let owed: Vec<TestAt> = self.visit.owed.clone();
         owed.iter().filter_map(|key| self.check_owed(key)).collect()
+    }
+
+    /// A test with its hold points as things stand; it becomes the one in hand.
+    ///
+    /// # Errors
+    /// `unknown-test`; `unavailable` with the reason and the safer way.
+    pub fn take_up(&mut self, test: &str, at: &str) -> Result<CheckOwed, SessionError> {
+        let check = self.visit.engine.check(test, at)?.clone();
+        self.must_be_available(&check)?;
+        if let Verdict::Refused(refusal) = self.visit.clear(&check) {
+            let safer = refusal.safer;
+            return Err(SessionError::new(
+                ErrorCode::Unavailable,
+                refusal.reason,
+                safer.unwrap_or_else(|| "take another test".to_owned()),
+            ));
+        }
+        let key = Engine::key(&check);
+        self.shown.retain(|shown| *shown != key);
+        self.shown.insert(0, key.clone());
+        self.check_owed(&key).ok_or_else(|| {
+            SessionError::new(ErrorCode::Internal, format!("`{test}` is gone"), "take another test")
+        })
     }
 
     fn check_owed(&mut self, key: &TestAt) -> Option<CheckOwed> {

@@ -1,0 +1,1 @@
+//! The prompt as a person types at it.
