@@ -65,10 +65,10 @@ const FINE: Fineness = Fineness {
 };
 
 const QUICK: Fineness = Fineness {
-    reach: 4.5,
+    reach: 4.0,
     panel: 3.0,
     nodes: 4,
-    join: 0.3,
+    join: 0.5,
     tolerance: None,
 };
 
@@ -78,7 +78,7 @@ impl Question<'_> {
         self.integrate(&FINE)
     }
 
-    /// Information about the group, within [`QUICK_ERROR`] bit of [`Self::information`] and some ten times sooner.
+    /// Information about the group, within [`QUICK_ERROR`] bit of [`Self::information`] and some twenty times sooner.
     pub fn quick_information(&self) -> f64 {
         self.integrate(&QUICK)
     }

@@ -1,8 +1,9 @@
 //! The readings expected under all hypotheses as one weighted mixture, and the integrand of its information.
 
 use std::collections::BTreeMap;
+use std::ops::Range;
 
-use crate::numeric::special::{LN_SQRT_2PI, exp, ln};
+use crate::numeric::special::{exp_many, ln};
 
 use super::information::{Question, Shape};
 use super::panels::Bell;
@@ -155,39 +156,29 @@ impl Mixture {
     pub(super) fn panel(&self, from: f64, to: f64, here: &[usize], rule: &[(f64, f64)]) -> f64 {
         let half = 0.5 * (to - from);
         let middle = 0.5 * (to + from);
+        let on = OnPanel::new(self, here);
+        let mut heights = vec![0.0; here.len()];
         rule.iter()
-            .map(|&(x, w)| w * half * self.integrand(middle + half * x, here))
+            .map(|&(x, w)| {
+                on.heights(middle + half * x, &mut heights);
+                w * half * self.integrand(&on, &heights)
+            })
             .sum()
     }
 
-    /// Σ_g J_g ln [J_g / (P_g f)] at `y`, where J_g = P_g f_g and groups with no kernel here have the gross part alone.
-    fn integrand(&self, y: f64, here: &[usize]) -> f64 {
-        let (mut sum, mut total, mut reached) = (0.0, 0.0, 0.0);
-        // Gross kernels follow the others, so their density is summed first.
-        let gross: f64 = here
-            .iter()
-            .rev()
-            .map(|&i| &self.bells[i])
-            .take_while(|b| b.group.is_none())
-            .map(|b| b.weight * b.bell.density(y))
-            .sum();
-        let mut at = 0;
-        while let Some(group) = here.get(at).and_then(|&i| self.bells[i].group) {
-            let mut joint = self.groups[group] * gross;
-            while let Some(kernel) = here.get(at).map(|&i| &self.bells[i]) {
-                if kernel.group != Some(group) {
-                    break;
-                }
-                joint += kernel.weight * kernel.bell.density(y);
-                at += 1;
-            }
-            reached += self.groups[group];
+    /// Σ_g J_g ln [J_g / (P_g f)], where J_g = P_g f_g and groups with no kernel here have the gross part alone.
+    fn integrand(&self, on: &OnPanel, heights: &[f64]) -> f64 {
+        let height = |at: &Range<usize>| heights[at.clone()].iter().sum::<f64>();
+        let gross = height(&on.gross);
+        let (mut sum, mut total) = (0.0, 0.0);
+        for run in &on.runs {
+            let joint = self.groups[run.group] * gross + height(&run.at);
             total += joint;
             if joint > 0.0 {
-                sum += joint * ln(joint / self.groups[group]);
+                sum += joint * ln(joint / self.groups[run.group]);
             }
         }
-        let rest = (1.0 - reached).max(0.0) * gross;
+        let rest = on.elsewhere * gross;
         total += rest;
         if rest > 0.0 {
             sum += rest * ln(gross);
@@ -220,11 +211,65 @@ impl Mixture {
     }
 }
 
-impl Bell {
-    /// Density at `y`.
-    fn density(&self, y: f64) -> f64 {
-        let z = (y - self.mean) / self.sd;
-        exp(-0.5 * z * z - LN_SQRT_2PI) / self.sd
+/// Neighbouring kernels of one group.
+struct Run {
+    group: usize,
+    at: Range<usize>,
+}
+
+/// The kernels that reach a panel, laid out so that their heights are worked out several at once.
+struct OnPanel {
+    means: Vec<f64>,
+    /// 1 / sd.
+    narrowness: Vec<f64>,
+    /// Joint weight / (sd √(2π)).
+    tops: Vec<f64>,
+    runs: Vec<Run>,
+    gross: Range<usize>,
+    /// Probability of the groups without a kernel here.
+    elsewhere: f64,
+}
+
+impl OnPanel {
+    fn new(mixture: &Mixture, here: &[usize]) -> Self {
+        const INV_SQRT_2PI: f64 = 0.398_942_280_401_432_7;
+        let kernels = || here.iter().map(|&i| &mixture.bells[i]);
+        let mut on = Self {
+            means: kernels().map(|k| k.bell.mean).collect(),
+            narrowness: kernels().map(|k| 1.0 / k.bell.sd).collect(),
+            tops: kernels()
+                .map(|k| k.weight * INV_SQRT_2PI / k.bell.sd)
+                .collect(),
+            runs: Vec::new(),
+            gross: 0..0,
+            elsewhere: 1.0,
+        };
+        let mut from = 0;
+        for run in here.chunk_by(|&a, &b| mixture.bells[a].group == mixture.bells[b].group) {
+            let to = from + run.len();
+            match mixture.bells[run[0]].group {
+                Some(group) => {
+                    on.elsewhere -= mixture.groups[group];
+                    on.runs.push(Run {
+                        group,
+                        at: from..to,
+                    });
+                }
+                None => on.gross = from..to,
+            }
+            from = to;
+        }
+        on.elsewhere = on.elsewhere.max(0.0);
+        on
+    }
+
+    /// Joint density of each kernel at `y`.
+    fn heights(&self, y: f64, heights: &mut [f64]) {
+        let kernels = self.means.iter().zip(&self.narrowness).zip(&self.tops);
+        for (height, ((mean, narrowness), top)) in heights.iter_mut().zip(kernels) {
+            let z = (y - mean) * narrowness;
+            *height = top * exp_many(-0.5 * z * z);
+        }
     }
 }
 
