@@ -8,24 +8,19 @@ use serde_json::Value;
 use super::error::{ErrorCode, SessionError};
 use super::event::TestAt;
 use super::view::Warning;
-use crate::checks::{Check, availability, catalogue};
+use crate::belief::Model;
+use crate::checks::{Check, availability};
 use crate::knowledge::procedure::MeterWord;
 use crate::knowledge::{Hookup, Knowledge, Meter};
-use crate::network::{Network, NetworkError};
+use crate::network::NetworkError;
 use crate::quantity::{Asked, Parsed, nearest, parse};
-use crate::site::{Known, Site, load_value};
+use crate::site::{Known, Site, SiteWarning, load_value};
 
 /// The fixed part of a visit.
 #[derive(Debug)]
 pub struct Engine {
-    /// What the trade knows.
-    pub knowledge: Arc<Knowledge>,
-    /// The installation.
-    pub site: Arc<Site>,
-    /// Its circuit.
-    pub network: Arc<Network>,
-    /// Every test at every place.
-    pub checks: Arc<Vec<Check>>,
+    /// Knowledge, site, circuit, hypotheses and tests.
+    pub model: Arc<Model>,
     /// Instruments.
     pub kit: BTreeSet<String>,
     /// What the site left open.
@@ -38,11 +33,7 @@ impl Engine {
     ///
     /// # Errors
     /// `bad-site` with the path; `unknown-word` for the kit; `internal` for mistakes of knowledge.
-    pub fn new(
-        knowledge: Arc<Knowledge>,
-        site: &Value,
-        kit: &[String],
-    ) -> Result<Self, SessionError> {
+    pub fn new(knowledge: &Knowledge, site: &Value, kit: &[String]) -> Result<Self, SessionError> {
         let known = Known::new(
             &knowledge.equipment,
             knowledge.rules.iter().map(|rule| rule.id.as_str()),
@@ -59,35 +50,38 @@ impl Engine {
                 ));
             }
         }
-        let network = Network::new(&site, &knowledge)?;
-        let checks = catalogue(&knowledge, &network, &site).map_err(|e| {
-            SessionError::new(
-                ErrorCode::Internal,
-                e.to_string(),
-                "mend the knowledge files",
-            )
+        let model = Model::new(knowledge.clone(), site).map_err(|e| {
+            let hint = "mend the knowledge files, or report the site file";
+            SessionError::new(ErrorCode::Internal, e.to_string(), hint)
         })?;
-        let rows = checks
-            .iter()
-            .enumerate()
-            .map(|(row, check)| ((check.test.clone(), check.at.clone()), row))
-            .collect();
-        let warnings = notes
-            .iter()
-            .map(|note| Warning {
-                code: "site".to_owned(),
-                text: note.to_string(),
-            })
-            .collect();
+        let key = |(row, check): (usize, &Check)| ((check.test.clone(), check.at.clone()), row);
+        let rows = model.checks.iter().enumerate().map(key).collect();
+        let said = |note: &SiteWarning| Warning {
+            code: "site".to_owned(),
+            text: note.to_string(),
+        };
+        let warnings = notes.iter().map(said).collect();
         Ok(Self {
-            knowledge,
-            site: Arc::new(site),
-            network: Arc::new(network),
-            checks: Arc::new(checks),
+            model: Arc::new(model),
             kit: kit.iter().cloned().collect(),
             warnings,
             rows,
         })
+    }
+
+    /// What the trade knows.
+    pub fn knowledge(&self) -> &Knowledge {
+        &self.model.knowledge
+    }
+
+    /// The installation.
+    pub fn site(&self) -> &Site {
+        &self.model.site
+    }
+
+    /// Every test at every place.
+    pub fn checks(&self) -> &[Check] {
+        &self.model.checks
     }
 
     /// Index of a test at a place in [`Self::checks`].
@@ -100,17 +94,17 @@ impl Engine {
     /// # Errors
     /// `unknown-test`, with the nearest tests, or the nearest places of that test.
     pub fn check(&self, test: &str, at: &str) -> Result<&Check, SessionError> {
-        if let Some(check) = self.row(test, at).and_then(|row| self.checks.get(row)) {
+        if let Some(check) = self.row(test, at).and_then(|row| self.checks().get(row)) {
             return Ok(check);
         }
         let places: Vec<&str> = self
-            .checks
+            .checks()
             .iter()
             .filter(|c| c.test == test)
             .map(|c| c.at.as_str())
             .collect();
         if places.is_empty() {
-            let tests: BTreeSet<&str> = self.checks.iter().map(|c| c.test.as_str()).collect();
+            let tests: BTreeSet<&str> = self.checks().iter().map(|c| c.test.as_str()).collect();
             return Err(SessionError::unknown(
                 ErrorCode::UnknownTest,
                 "test",
@@ -134,7 +128,7 @@ impl Engine {
 
     /// Why a test cannot be done with this kit and this leave; `None`: it can.
     pub fn why_not(&self, check: &Check) -> Option<String> {
-        availability(&self.knowledge, check, &self.kit, &self.site).err()
+        availability(self.knowledge(), check, &self.kit, self.site()).err()
     }
 
     /// Understands what was read in a test.
@@ -147,7 +141,7 @@ impl Engine {
 
     /// What a hookup asks to be read.
     pub fn asked(&self, hookup: &Hookup, unit: &str) -> Asked {
-        let over = self.knowledge.error_of(hookup).map(|row| row.over);
+        let over = self.knowledge().error_of(hookup).map(|row| row.over);
         let low_z = matches!(
             hookup,
             Hookup::Volts {

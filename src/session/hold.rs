@@ -108,7 +108,7 @@ pub fn as_checks(
     point: &HoldPoint,
     parsed: &BTreeMap<String, Parsed>,
 ) -> Vec<(Check, Parsed)> {
-    let Some(form) = engine.checks.first() else {
+    let Some(form) = engine.checks().first() else {
         return Vec::new();
     };
     let each = point
@@ -122,7 +122,7 @@ pub fn as_checks(
         check.setup = point.setup.clone();
         check.hookup = hookup(&want.between);
         check.unit = "V".to_owned();
-        check.energised = energised(&check.setup, &check.hookup, &engine.site);
+        check.energised = energised(&check.setup, &check.hookup, engine.site());
         check.proves = Vec::new();
         (check, parsed)
     })

@@ -67,7 +67,7 @@ impl Judged {
 pub fn place_of(engine: &Engine, at: &str) -> Option<Place> {
     let first = at.split('+').next().unwrap_or(at);
     let classes = CLASSES.map(str::to_owned);
-    place::find(&engine.site, &classes, first)
+    place::find(engine.site(), &classes, first)
 }
 
 /// The limits that judge a test at its place, under the site's rule set.
@@ -75,21 +75,21 @@ pub fn limits(engine: &Engine, check: &Check) -> Vec<Limit> {
     let Some(place) = place_of(engine, &check.at).or_else(|| place_of(engine, &check.place)) else {
         return Vec::new();
     };
-    let rules = engine.site.rules.as_deref();
+    let rules = engine.site().rules.as_deref();
     let ours = |row: &&LimitRow| match rules {
         Some(ours) => row.rules.is_empty() || row.rules.iter().any(|rule| rule == ours),
         None => true,
     };
     let fits = |row: &&LimitRow| {
         let holds = |word: &String| {
-            holds(word, &place, &engine.site, &engine.knowledge.equipment) == Some(true)
+            holds(word, &place, engine.site(), &engine.knowledge().equipment) == Some(true)
         };
         row.only.iter().all(holds)
     };
     check
         .limits
         .iter()
-        .filter_map(|id| engine.knowledge.limit(id))
+        .filter_map(|id| engine.knowledge().limit(id))
         .filter(ours)
         .filter(fits)
         .filter_map(|row| at_place(engine, &place, row))
@@ -98,7 +98,7 @@ pub fn limits(engine: &Engine, check: &Check) -> Vec<Limit> {
 
 /// A row with its numbers worked out; `None` where the place lacks what they follow from.
 fn at_place(engine: &Engine, place: &Place, row: &LimitRow) -> Option<Limit> {
-    let site = &engine.site;
+    let site = engine.site();
     let residual = || {
         place
             .rcd(site)

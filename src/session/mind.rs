@@ -4,73 +4,182 @@ use std::sync::Arc;
 
 use super::command;
 use super::engine::Engine;
-use super::error::{ErrorCode, SessionError};
-use super::view::{AdviceView, OddsView, VerdictView};
+use super::error::SessionError;
+use super::shadow::Shadow;
+use super::view::{AdviceView, GroupRow, OddsView, RankRow, VerdictView};
+use crate::belief::{Belief, Complaint, Reading};
 use crate::checks::Check;
-use crate::faults::Fault;
-use crate::knowledge::{Hookup, Setup};
-use crate::network::Edit;
+use crate::faults::{Fault, repair_text};
+use crate::knowledge::Setup;
 use crate::quantity::Parsed;
-use crate::safety::{Body, Cleared, HazardBook, Hazards, World};
+use crate::safety::{Cleared, Hazards};
 
-/// Skin is taken to be wet: nobody asks the occupant to dry it.
-const SKIN: &str = "wet";
-
-/// One body in twenty lets more current through.
-const PERCENTILE: f64 = 5.0;
+/// What belief was told, by entry, so that any of it can be taken back.
+#[derive(Clone, Debug)]
+enum Told {
+    Complaint(Complaint),
+    Reading(Reading),
+    Repair {
+        singles: Vec<usize>,
+        found: bool,
+        done: bool,
+    },
+}
 
 /// Odds and plan.
 #[derive(Debug)]
 pub struct Mind {
     engine: Arc<Engine>,
-    book: HazardBook,
-    body: Body,
+    seed: u64,
+    belief: Belief,
+    told: Vec<(u64, Told)>,
+    shadow: Shadow,
 }
 
 impl Mind {
-    pub fn new(engine: Arc<Engine>, _seed: u64) -> Result<Self, SessionError> {
-        let body = Body::from_rows(&engine.knowledge.bodies, SKIN, PERCENTILE).map_err(|e| {
-            SessionError::new(
-                ErrorCode::Internal,
-                e.to_string(),
-                "mend the knowledge files",
-            )
-        })?;
+    /// The odds at an installation that calls.
+    ///
+    /// # Errors
+    /// `internal`: knowledge that lacks what safety stands on.
+    pub fn new(engine: Arc<Engine>, seed: u64) -> Result<Self, SessionError> {
+        let belief = Belief::new(Arc::clone(&engine.model), seed);
+        let shadow = Shadow::new(&engine)?;
         Ok(Self {
             engine,
-            book: HazardBook::new(),
-            body,
+            seed,
+            belief,
+            told: Vec::new(),
+            shadow,
         })
     }
+
+    /// The belief itself, for faces that show where currents go.
+    pub fn belief(&self) -> &Belief {
+        &self.belief
+    }
+
+    /// How many hypotheses the odds start from.
     pub fn hypotheses(&self) -> usize {
-        0
+        self.engine.model.space.singles.len()
     }
+
+    /// Ids of all hypotheses.
     pub fn ids(&self) -> Vec<String> {
-        Vec::new()
+        self.belief
+            .candidates()
+            .iter()
+            .map(|candidate| candidate.id().to_owned())
+            .collect()
     }
-    pub fn symptom(&mut self, _entry: u64, _symptom: &command::Symptom) {}
-    pub fn observe(&mut self, _entry: u64, _check: &Check, _parsed: &Parsed) {}
-    pub fn retract(&mut self, _entry: u64) {}
-    pub fn repair(&mut self, _entry: u64, _faults: &[Fault], _found: bool, _done: bool) {}
-    pub fn refine(&mut self, _passes: u64) {}
-    pub fn think(&mut self, _go_on: &mut dyn FnMut() -> bool) -> u64 {
-        0
+
+    /// A complaint.
+    pub fn symptom(&mut self, entry: u64, symptom: &command::Symptom) {
+        let detail = symptom.detail.clone().unwrap_or_default();
+        self.tell(
+            entry,
+            Told::Complaint(Complaint {
+                kind: symptom.kind.clone(),
+                at: symptom.at.clone(),
+                when: detail.when.map(|when| when.as_str().to_owned()),
+                with: detail.with,
+                entry,
+            }),
+        );
     }
-    pub fn surprise(&self, _check: &Check, _parsed: &Parsed) -> f64 {
-        1.0
+
+    /// A reading, in the setup of the check as taken.
+    pub fn observe(&mut self, entry: u64, check: &Check, parsed: &Parsed) {
+        self.tell(entry, Told::Reading(as_reading(entry, check, parsed)));
     }
-    pub fn odds(&self, _count: usize) -> OddsView {
-        OddsView {
-            unlisted: 1.0,
-            ..OddsView::default()
+
+    /// A repair, or a place looked at in vain.
+    pub fn repair(&mut self, entry: u64, faults: &[Fault], found: bool, done: bool) {
+        let singles = faults
+            .iter()
+            .filter_map(|fault| self.single(fault))
+            .collect();
+        self.tell(
+            entry,
+            Told::Repair {
+                singles,
+                found,
+                done,
+            },
+        );
+        self.shadow.clear();
+    }
+
+    /// The single hypothesis that a fault is, its value left aside.
+    fn single(&self, fault: &Fault) -> Option<usize> {
+        let singles = &self.engine.model.space.singles;
+        let of = |hypothesis: &crate::faults::Hypothesis| match hypothesis.faults.as_slice() {
+            [one] => Some(one.clone()),
+            _ => None,
+        };
+        let same = |one: &Fault| one.kind == fault.kind && one.at == fault.at;
+        let exact =
+            |one: &Fault| same(one) && one.to == fault.to && one.conductor == fault.conductor;
+        let find = |fits: &dyn Fn(&Fault) -> bool| {
+            singles
+                .iter()
+                .position(|h| of(h).is_some_and(|one| fits(&one)))
+        };
+        find(&exact).or_else(|| find(&same))
+    }
+
+    fn tell(&mut self, entry: u64, told: Told) {
+        take(&mut self.belief, entry, &told);
+        self.told.push((entry, told));
+    }
+
+    /// Takes everything of an entry back.
+    pub fn retract(&mut self, entry: u64) {
+        let repair = self
+            .told
+            .iter()
+            .any(|(n, told)| *n == entry && matches!(told, Told::Repair { .. }));
+        self.told.retain(|(n, _)| *n != entry);
+        if repair {
+            self.belief = Belief::new(Arc::clone(&self.engine.model), self.seed);
+            for (n, told) in &self.told {
+                take(&mut self.belief, *n, told);
+            }
+        } else {
+            self.belief.retract(entry);
         }
+        self.shadow.clear();
     }
-    pub fn whatif(&self, _check: &Check, _parsed: &Parsed, count: usize) -> OddsView {
-        self.odds(count)
+
+    /// Tail probability of a reading under the mixture.
+    pub fn surprise(&self, check: &Check, parsed: &Parsed) -> f64 {
+        self.belief.surprise(&as_reading(0, check, parsed))
     }
-    pub fn evidence(&self, _hypothesis: &str) -> Option<Vec<(u64, f64)>> {
-        None
+
+    /// The odds, at most `count` hypotheses.
+    pub fn odds(&self, count: usize) -> OddsView {
+        view(&self.engine, &self.belief, count)
     }
+
+    /// The odds as a reading would leave them.
+    pub fn whatif(&self, check: &Check, parsed: &Parsed, count: usize) -> OddsView {
+        let mut belief = self.belief.clone();
+        belief.observe(as_reading(u64::MAX, check, parsed));
+        view(&self.engine, &belief, count)
+    }
+
+    /// Bits of each entry for a hypothesis against the rest; `None`: there is no such hypothesis.
+    pub fn evidence(&self, hypothesis: &str) -> Option<Vec<(u64, f64)>> {
+        let candidate = self.belief.find(hypothesis)?;
+        Some(
+            self.belief
+                .evidence(candidate)
+                .into_iter()
+                .map(|(entry, _, _, bits)| (entry, bits))
+                .collect(),
+        )
+    }
+
+    /// The tests worth most, best first.
     pub fn advise(
         &mut self,
         _cleared: &[Cleared<Check>],
@@ -78,9 +187,10 @@ impl Mind {
         _place: &str,
         _count: usize,
     ) -> Vec<AdviceView> {
-        let _ = &self.engine;
         Vec::new()
     }
+
+    /// What to do now instead of another test.
     pub fn verdict(
         &mut self,
         _cleared: &[Cleared<Check>],
@@ -89,11 +199,77 @@ impl Mind {
     ) -> Option<VerdictView> {
         None
     }
-    pub fn with_hazards<R>(&mut self, f: impl FnOnce(&mut Hazards<'_>) -> R) -> R {
-        let mut simulator = |_: &World, _: usize, _: &Setup, _: &[Edit], hookups: &[Hookup]| {
-            vec![None; hookups.len()]
-        };
-        let mut hazards = Hazards::new(&mut self.book, &[], &self.body, &mut simulator);
-        f(&mut hazards)
+
+    /// Lets the gate simulate under what is credible now.
+    pub fn with_hazards<R>(&mut self, ask: impl FnOnce(&mut Hazards<'_>) -> R) -> R {
+        self.shadow.with(&self.engine, &self.belief, ask)
+    }
+}
+
+fn as_reading(entry: u64, check: &Check, parsed: &Parsed) -> Reading {
+    Reading {
+        entry,
+        test: check.test.clone(),
+        at: check.at.clone(),
+        setup: check.setup.clone(),
+        hookup: check.hookup.clone(),
+        parsed: *parsed,
+        epoch: 0,
+    }
+}
+
+fn take(belief: &mut Belief, entry: u64, told: &Told) {
+    match told {
+        Told::Complaint(complaint) => belief.complain(complaint.clone()),
+        Told::Reading(reading) => belief.observe(reading.clone()),
+        Told::Repair {
+            singles,
+            found,
+            done,
+        } => belief.repair(entry, singles, *found, *done),
+    }
+}
+
+fn view(engine: &Engine, belief: &Belief, count: usize) -> OddsView {
+    let odds = belief.odds();
+    let candidate = |index: usize| belief.candidates().get(index);
+    let row = |&(index, p): &(usize, f64)| {
+        let candidate = candidate(index)?;
+        let faults = candidate
+            .hypothesis
+            .as_ref()
+            .map(|h| h.faults.clone())
+            .unwrap_or_default();
+        Some(RankRow {
+            hypothesis: candidate.id().to_owned(),
+            group: candidate.group().to_owned(),
+            faults,
+            p,
+        })
+    };
+    let group = |(group, p): &(String, f64)| {
+        let leader = odds
+            .hypotheses
+            .iter()
+            .filter_map(|(index, _)| candidate(*index))
+            .find(|c| c.group() == group);
+        let faults = leader
+            .and_then(|c| c.hypothesis.as_ref())
+            .map(|h| h.faults.as_slice())
+            .unwrap_or_default();
+        let repair =
+            repair_text(&engine.model.knowledge, &engine.model.site, faults).unwrap_or_default();
+        GroupRow {
+            group: group.clone(),
+            p: *p,
+            repair,
+        }
+    };
+    OddsView {
+        ranking: odds.hypotheses.iter().filter_map(row).take(count).collect(),
+        groups: odds.groups.iter().take(count).map(group).collect(),
+        nothing_wrong: odds.nothing_wrong,
+        unlisted: odds.unlisted,
+        not_examined: odds.not_examined,
     }
 }

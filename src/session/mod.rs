@@ -21,6 +21,7 @@ pub mod predict;
 mod reading;
 pub mod rechecks;
 mod repair;
+mod shadow;
 mod symptom;
 mod tests_list;
 pub mod view;

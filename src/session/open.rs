@@ -48,7 +48,7 @@ impl Session {
     /// `bad-request` (neither or both of `site` and `path`), `bad-site`, `unknown-word` (kit),
     /// `log-not-empty`, log errors.
     pub fn open(
-        knowledge: Arc<Knowledge>,
+        knowledge: &Knowledge,
         clock: Clock,
         log: Log,
         ask: &command::Open,
@@ -60,10 +60,10 @@ impl Session {
                 "`resume` goes on with that visit; a new one needs a new log",
             ));
         }
-        let site = document(&knowledge, ask)?;
+        let site = document(knowledge, ask)?;
         let usual = || USUAL_KIT.map(str::to_owned).to_vec();
         let kit = ask.kit.clone().unwrap_or_else(usual);
-        let engine = Arc::new(Engine::new(Arc::clone(&knowledge), &site, &kit)?);
+        let engine = Arc::new(Engine::new(knowledge, &site, &kit)?);
         let opened = Opened {
             schema: SCHEMA.to_owned(),
             version: VERSION.to_owned(),
@@ -102,7 +102,7 @@ impl Session {
     /// `no-session` where the log is missing or empty; log errors; `log-broken` where the site or the
     /// events do not fit this program's knowledge.
     pub fn resume(
-        knowledge: Arc<Knowledge>,
+        knowledge: &Knowledge,
         clock: Clock,
         path: &Path,
     ) -> Result<(Self, OpenAnswer), SessionError> {
@@ -123,18 +123,17 @@ impl Session {
     /// # Errors
     /// As [`Self::resume`].
     pub fn resume_with(
-        knowledge: Arc<Knowledge>,
+        knowledge: &Knowledge,
         clock: Clock,
         log: Log,
         records: Vec<Record>,
         torn: Option<Torn>,
     ) -> Result<(Self, OpenAnswer), SessionError> {
-        let digest = knowledge.digest.clone();
         let mut session = Self::replay(knowledge, records, |_, _| {})?;
         session.clock = clock;
         session.log = log;
         let mut warnings = session.visit.engine.warnings.clone();
-        if session.opened.knowledge != digest {
+        if session.opened.knowledge != knowledge.digest {
             warnings.push(said(
                 "log",
                 "the log was written with other knowledge files: its odds may come out otherwise",
@@ -181,7 +180,7 @@ impl Session {
     /// # Errors
     /// `no-session` where there are no events; `log-broken` naming the line that does not fit.
     pub fn replay(
-        knowledge: Arc<Knowledge>,
+        knowledge: &Knowledge,
         records: Vec<Record>,
         mut each: impl FnMut(&mut Self, &Record),
     ) -> Result<Self, SessionError> {
@@ -239,7 +238,7 @@ impl Session {
         OpenAnswer {
             session: mark.chars().take(12).collect(),
             hypotheses: self.visit.mind.hypotheses(),
-            tests: self.visit.engine.checks.len(),
+            tests: self.visit.engine.checks().len(),
             entries,
             warnings,
         }

@@ -67,12 +67,15 @@ impl Engine {
                 hint,
             ));
         }
-        let edits = edits(&self.knowledge, &self.site, &ask.faults)?;
+        let edits = edits(self.knowledge(), self.site(), &ask.faults)?;
         let setup = ask.setup.clone().unwrap_or_default();
         let protection = ask.protection.unwrap_or(false);
-        shown(
-            self.network
-                .predict(&edits, &setup, &ask.hookup, &ask.parameters, protection)?,
-        )
+        shown(self.model.network.predict(
+            &edits,
+            &setup,
+            &ask.hookup,
+            &ask.parameters,
+            protection,
+        )?)
     }
 }

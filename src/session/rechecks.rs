@@ -9,11 +9,11 @@ use crate::site::place;
 
 /// Places round a fault, the nearest first: itself, its other end, its point, circuit, RCD, board.
 fn round(engine: &Engine, fault: &Fault) -> Vec<String> {
-    let site = &engine.site;
+    let site = engine.site();
     let mut ids = vec![fault.at.clone()];
     ids.extend(fault.to.clone());
     let classes = engine
-        .knowledge
+        .knowledge()
         .fault(&fault.kind)
         .map(|kind| kind.at.clone())
         .unwrap_or_default();
@@ -44,9 +44,9 @@ fn distance(engine: &Engine, round: &[String], check: &Check) -> usize {
         })
     };
     let own_board = || {
-        let board = place_of(engine, &check.at).map(|place| place.board(&engine.site));
+        let board = place_of(engine, &check.at).map(|place| place.board(engine.site()));
         let board = board
-            .and_then(|b| engine.site.boards.get(b))
+            .and_then(|b| engine.site().boards.get(b))
             .map(|b| b.id.as_str());
         usize::from(board != round.last().map(String::as_str))
     };
@@ -60,7 +60,7 @@ fn distance(engine: &Engine, round: &[String], check: &Check) -> usize {
 pub fn nearest_check<'a>(engine: &'a Engine, test: &str, fault: &Fault) -> Option<&'a Check> {
     let round = round(engine, fault);
     engine
-        .checks
+        .checks()
         .iter()
         .filter(|check| check.test == test)
         .min_by_key(|check| distance(engine, &round, check))
@@ -70,7 +70,7 @@ pub fn nearest_check<'a>(engine: &'a Engine, test: &str, fault: &Fault) -> Optio
 pub fn owed(engine: &Engine, faults: &[Fault]) -> Vec<TestAt> {
     let mut all: Vec<TestAt> = Vec::new();
     for fault in faults {
-        let Some(kind) = engine.knowledge.fault(&fault.kind) else {
+        let Some(kind) = engine.knowledge().fault(&fault.kind) else {
             continue;
         };
         for test in &kind.repair.rechecks {

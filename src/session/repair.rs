@@ -48,7 +48,7 @@ impl Session {
             ));
         }
         let engine = &self.visit.engine;
-        describe(&engine.knowledge, &engine.site, &ask.faults)?;
+        describe(engine.knowledge(), engine.site(), &ask.faults)?;
         let entry = self.record(Event::Repair(ask.clone()))?;
         let checks = self.checks_owed();
         let mut answer = self.moved(entry);
@@ -137,7 +137,7 @@ impl Session {
         }
         self.must_be_available(&check)?;
         self.let_in(&check)?;
-        let rules_named = self.visit.engine.site.rules.is_some();
+        let rules_named = self.visit.engine.site().rules.is_some();
         let result = judge(&limits(&self.visit.engine, &check), rules_named, &parsed)
             .as_str()
             .to_owned();

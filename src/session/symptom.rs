@@ -43,9 +43,9 @@ impl Session {
     pub fn symptom(&mut self, ask: &command::Symptom) -> Result<MovedAnswer, SessionError> {
         self.going()?;
         let engine = std::sync::Arc::clone(&self.visit.engine);
-        let Some(row) = engine.knowledge.symptom(&ask.kind) else {
+        let Some(row) = engine.knowledge().symptom(&ask.kind) else {
             let all = engine
-                .knowledge
+                .knowledge()
                 .symptoms
                 .iter()
                 .map(|row| row.kind.as_str());
@@ -57,7 +57,7 @@ impl Session {
             ));
         };
         if let Some(at) = &ask.at {
-            let all = ids(&engine.site, &row.at);
+            let all = ids(engine.site(), &row.at);
             if !all.contains(at) {
                 let what = format!("place for `{}` (it is at: {})", row.kind, row.at.join(", "));
                 let all = all.iter().map(String::as_str);
@@ -70,10 +70,10 @@ impl Session {
             }
         }
         if let Some(with) = ask.detail.as_ref().and_then(|detail| detail.with.as_ref())
-            && engine.site.equipment_index(with).is_none()
+            && engine.site().equipment_index(with).is_none()
         {
             let all = engine
-                .site
+                .site()
                 .equipment
                 .iter()
                 .map(|equipment| equipment.id.as_str());
@@ -86,7 +86,7 @@ impl Session {
         }
         let entry = self.record(Event::Symptom(ask.clone()))?;
         let mut answer = self.moved(entry);
-        answer.warnings = Some(warnings(row, &engine.knowledge.warnings));
+        answer.warnings = Some(warnings(row, &engine.knowledge().warnings));
         Ok(answer)
     }
 }

@@ -13,7 +13,7 @@ use crate::safety::places::conductors_at;
 impl Visit {
     /// A test as an answer shows it, its minutes from a state and a place.
     pub fn test_view(&self, check: &Check, from: &Setup, place: &str) -> TestView {
-        let effort = &self.engine.knowledge.effort;
+        let effort = &self.engine.knowledge().effort;
         let why_not = self
             .why_not(check)
             .or_else(|| match self.clear_by_rules(check) {
@@ -32,7 +32,7 @@ impl Visit {
             setup: check.setup.clone(),
             hookup: check.hookup.clone(),
             unit: check.unit.clone(),
-            minutes: check.minutes_from(from, place, &self.engine.site, effort),
+            minutes: check.minutes_from(from, place, self.engine.site(), effort),
             energised: check.energised,
             available: why_not.is_none(),
             why_not,
@@ -46,14 +46,14 @@ impl Session {
         let service = Setup::default();
         let view = |check| self.visit.test_view(check, &service, "");
         TestsAnswer {
-            tests: self.visit.engine.checks.iter().map(view).collect(),
+            tests: self.visit.engine.checks().iter().map(view).collect(),
         }
     }
 
     /// What is open, lifted, proved dead, live, owed.
     pub fn state(&self) -> StateAnswer {
         let safety = &self.visit.safety;
-        let site = &self.visit.engine.site;
+        let site = self.visit.engine.site();
         let mut proved: BTreeMap<(String, u64), Vec<String>> = BTreeMap::new();
         let mut dead: BTreeSet<&str> = BTreeSet::new();
         for proof in safety.proved_dead() {

@@ -72,7 +72,7 @@ impl Visit {
         let can = |check: &&Check| {
             engine.why_not(check).is_none() && !self.cannot.contains_key(&Engine::key(check))
         };
-        self.available = engine.checks.iter().filter(can).cloned().collect();
+        self.available = engine.checks().iter().filter(can).cloned().collect();
     }
 
     /// A test as it was taken: in its own setup, or in another.
@@ -88,11 +88,12 @@ impl Visit {
         let mut check = self.engine.check(test, at)?.clone();
         if let Some(setup) = setup {
             self.engine
+                .model
                 .network
                 .circuit
                 .switching(setup, Unnamed::AsFound)?;
             check.setup = setup.clone();
-            check.energised = energised(&check.setup, &check.hookup, &self.engine.site);
+            check.energised = energised(&check.setup, &check.hookup, self.engine.site());
         }
         Ok(check)
     }
@@ -109,8 +110,8 @@ impl Visit {
     /// The ground that the rules of safety stand on.
     fn ground<'a>(engine: &'a Engine, available: &'a [Check]) -> Ground<'a> {
         Ground {
-            site: &engine.site,
-            numbers: &engine.knowledge.safety,
+            site: engine.site(),
+            numbers: &engine.knowledge().safety,
             catalogue: available,
         }
     }
@@ -186,19 +187,18 @@ impl Visit {
     pub fn apply(&mut self, record: &Record, earlier: &[Record]) -> Result<(), SessionError> {
         let entry = record.n;
         match &record.event {
-            Event::Opened(_) | Event::Note(_) => {}
+            Event::Opened(_) | Event::Note(_) | Event::Advised(_) => {}
             Event::Symptom(symptom) => {
                 self.mind.symptom(entry, symptom);
                 if self
                     .engine
-                    .knowledge
+                    .knowledge()
                     .symptom(&symptom.kind)
                     .is_some_and(is_standing)
                 {
                     self.note(&StateEvent::Standing);
                 }
             }
-            Event::Advised(advised) => self.mind.refine(advised.passes),
             Event::HoldPoint(point) => self.apply_point(entry, point)?,
             Event::Reading(reading) => {
                 let check = self.as_taken(&reading.test, &reading.at, reading.setup.as_ref())?;
@@ -291,7 +291,7 @@ impl Visit {
             let places: Vec<String> = repair.faults.iter().map(|fault| fault.at.clone()).collect();
             let theirs = |kind: &str| {
                 self.engine
-                    .knowledge
+                    .knowledge()
                     .fault(kind)
                     .is_some_and(|row| row.repair.action == "call-network")
             };

@@ -1,7 +1,5 @@
 //! A visit from its commands: points before readings, corrections, re-tests, and the same state from its log.
 
-use std::sync::Arc;
-
 use serde_json::{Value, json};
 
 use super::command::{self, CloseOutcome};
@@ -29,8 +27,8 @@ fn opened() -> Session {
         seed: Some(7),
         ..command::Open::default()
     };
-    let knowledge = Arc::new(Knowledge::embedded().unwrap());
-    Session::open(knowledge, Clock::stepping(0, 1000), Log::in_memory(), &ask)
+    let knowledge = Knowledge::embedded().unwrap();
+    Session::open(&knowledge, Clock::stepping(0, 1000), Log::in_memory(), &ask)
         .unwrap()
         .0
 }
@@ -47,7 +45,7 @@ fn reading(check: &Check, value: &str, confirm: bool) -> command::Reading {
 
 /// A check whose first reading is stopped by hold points that are done by hand.
 fn held(session: &mut Session) -> (Check, SessionError) {
-    for check in session.engine().checks.to_vec() {
+    for check in session.engine().checks().to_vec() {
         if let Err(error) = session.reading(&reading(&check, value_for(&check), true))
             && error.code == ErrorCode::HoldPointOpen
             && error.extra["points"]
@@ -145,7 +143,7 @@ fn unknown_is_cannot_and_comes_back() {
     let mut session = opened();
     let check = session
         .engine()
-        .checks
+        .checks()
         .iter()
         .find(|c| session.why_not(c).is_none())
         .unwrap()
@@ -169,7 +167,7 @@ fn unknown_is_cannot_and_comes_back() {
 #[test]
 fn what_was_taken_back_is_off_the_lists() {
     let mut session = opened();
-    let check = session.engine().checks[0].clone();
+    let check = session.engine().checks()[0].clone();
     let cannot = command::Cannot {
         test: check.test.clone(),
         at: check.at.clone(),
@@ -196,7 +194,7 @@ fn what_was_taken_back_is_off_the_lists() {
 #[test]
 fn a_repair_owes_its_re_tests_before_the_visit_may_end_repaired() {
     let mut session = opened();
-    let kinds = &session.engine().knowledge.faults;
+    let kinds = &session.engine().knowledge().faults;
     let kind = kinds
         .iter()
         .find(|k| !k.repair.rechecks.is_empty() && k.at == ["service"])
@@ -244,8 +242,8 @@ fn a_replay_stands_where_the_visit_stood() {
             within_ms: Some(1),
         })
         .unwrap();
-    let knowledge = Arc::clone(&session.engine().knowledge);
-    let mut again = Session::replay(knowledge, session.records().to_vec(), |_, _| {}).unwrap();
+    let knowledge = session.engine().knowledge().clone();
+    let mut again = Session::replay(&knowledge, session.records().to_vec(), |_, _| {}).unwrap();
     let all = command::Ranking {
         count: Some(100_000),
     };

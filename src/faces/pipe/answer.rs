@@ -99,7 +99,7 @@ impl Pipe {
             Request::Open(ask) => {
                 let log = self.new_log()?;
                 let (session, answer) =
-                    Session::open(Arc::clone(&self.knowledge), self.clock.clone(), log, &ask)?;
+                    Session::open(&self.knowledge, self.clock.clone(), log, &ask)?;
                 self.session = Some(session);
                 shown(answer)
             }
@@ -152,8 +152,7 @@ impl Pipe {
                 hint,
             ));
         };
-        let (session, answer) =
-            Session::resume(Arc::clone(&self.knowledge), self.clock.clone(), path)?;
+        let (session, answer) = Session::resume(&self.knowledge, self.clock.clone(), path)?;
         self.session = Some(session);
         shown(answer)
     }
