@@ -5,8 +5,8 @@ use super::clock::Deadline;
 use super::command;
 use super::engine::Engine;
 use super::error::SessionError;
-use super::event::{Advised, Event};
-use super::view::AdviseAnswer;
+use super::event::{Advised, Event, TestAt};
+use super::view::{AdviceView, AdviseAnswer};
 
 /// Tests advised when nobody says how many.
 const USUAL_COUNT: usize = 3;
@@ -23,33 +23,28 @@ impl Session {
         self.going()?;
         let count = ask.count.unwrap_or(USUAL_COUNT).max(1);
         let deadline = Deadline::in_ms(Some(ask.within_ms.unwrap_or(USUAL_MS)));
-        let passes = u64::from(deadline.has_time());
-        let cleared = self.visit.cleared();
-        let (setup, place) = (self.visit.safety.setup().clone(), self.visit.place.clone());
-        let advice = self.visit.mind.advise(&cleared, &setup, &place, count);
-        let tests: Vec<_> = advice
-            .iter()
-            .map(|a| super::event::TestAt {
-                test: a.test.test.clone(),
-                at: a.test.at.clone(),
-            })
-            .collect();
-        let event = Event::Advised(Advised {
+        let before = self.visit.passes;
+        let passes = self.visit.think(|| deadline.has_time());
+        let advice = self.visit.advice(count);
+        let key = |a: &AdviceView| TestAt {
+            test: a.test.test.clone(),
+            at: a.test.at.clone(),
+        };
+        let tests: Vec<TestAt> = advice.iter().map(key).collect();
+        let advised = Advised {
             count,
             within_ms: ask.within_ms,
             passes,
             advice: tests.clone(),
-        });
-        // The thinking has been done: it is not applied a second time.
-        let time = self.clock.now();
-        let n = match self.log.append(time, &event) {
-            Ok(n) => n,
+        };
+        let entry = match self.record(Event::Advised(advised)) {
+            Ok(entry) => entry,
             Err(error) => {
-                self.rebuild()?;
-                return Err(error.into());
+                // Thinking that the log does not know of must not count.
+                self.visit.forget_passes(before);
+                return Err(error);
             }
         };
-        self.records.push(super::chain::Record { n, time, event });
         self.shown = tests;
         let verdict = self.note_verdict();
         let why = match (advice.first(), &verdict) {
@@ -61,7 +56,7 @@ impl Session {
             (None, None) => "no available test would change what to do".to_owned(),
         };
         Ok(AdviseAnswer {
-            entry: n,
+            entry,
             advice,
             verdict,
             why,

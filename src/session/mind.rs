@@ -6,13 +6,12 @@ use super::command;
 use super::engine::Engine;
 use super::error::SessionError;
 use super::shadow::Shadow;
-use super::view::{AdviceView, GroupRow, OddsView, RankRow, VerdictView};
+use super::view::{GroupRow, OddsView, RankRow};
 use crate::belief::{Belief, Complaint, Reading};
 use crate::checks::Check;
 use crate::faults::{Fault, repair_text};
-use crate::knowledge::Setup;
 use crate::quantity::Parsed;
-use crate::safety::{Cleared, Hazards};
+use crate::safety::Hazards;
 
 /// What belief was told, by entry, so that any of it can be taken back.
 #[derive(Clone, Debug)]
@@ -179,25 +178,12 @@ impl Mind {
         )
     }
 
-    /// The tests worth most, best first.
-    pub fn advise(
-        &mut self,
-        _cleared: &[Cleared<Check>],
-        _setup: &Setup,
-        _place: &str,
-        _count: usize,
-    ) -> Vec<AdviceView> {
-        Vec::new()
-    }
-
-    /// What to do now instead of another test.
-    pub fn verdict(
-        &mut self,
-        _cleared: &[Cleared<Check>],
-        _setup: &Setup,
-        _place: &str,
-    ) -> Option<VerdictView> {
-        None
+    /// What was read in an entry.
+    pub fn told_in(&self, entry: u64) -> Option<Parsed> {
+        self.told.iter().find_map(|(n, told)| match told {
+            Told::Reading(reading) if *n == entry => Some(reading.parsed),
+            _ => None,
+        })
     }
 
     /// Lets the gate simulate under what is credible now.

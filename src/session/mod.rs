@@ -17,6 +17,7 @@ pub mod log;
 mod mind;
 mod odds;
 mod open;
+mod planning;
 pub mod predict;
 mod reading;
 pub mod rechecks;
@@ -117,8 +118,7 @@ impl Session {
         applied.map(|()| n)
     }
 
-    /// Thinks everything through again from the events: after thinking that the log could not keep, or a
-    /// fault of this program.
+    /// Thinks everything through again from the events: after a fault of this program.
     ///
     /// # Errors
     /// `internal`: an event that cannot be applied.

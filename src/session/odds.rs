@@ -87,11 +87,13 @@ impl Session {
 
     /// The verdict now; logged when it is another than before.
     pub(super) fn note_verdict(&mut self) -> Option<VerdictView> {
-        let cleared = self.visit.cleared();
-        let verdict =
-            self.visit
-                .mind
-                .verdict(&cleared, self.visit.safety.setup(), &self.visit.place);
+        // Before any reading nothing is acted on, and planning would only cost time.
+        let read = !self.visit.mind.belief().readings().is_empty();
+        let verdict = if read {
+            self.visit.verdict_view()
+        } else {
+            None
+        };
         let logged = self
             .visit
             .verdict

@@ -10,13 +10,14 @@ use super::error::{ErrorCode, SessionError};
 use super::event::{Event, TestAt, VerdictStands};
 use super::hold;
 use super::mind::Mind;
+use super::planning::Planned;
 use super::rechecks;
 use crate::checks::{Check, energised};
 use crate::knowledge::Setup;
 use crate::network::Unnamed;
 use crate::quantity::Parsed;
 use crate::safety::{
-    Cleared, Gate, Ground, HoldPoint, ReadingStop, State, StateEvent, Verdict, is_standing,
+    Gate, Ground, HoldPoint, ReadingStop, State, StateEvent, Verdict, is_standing,
 };
 
 /// Everything that changes.
@@ -42,6 +43,10 @@ pub struct Visit {
     pub verdict: Option<VerdictStands>,
     /// Whether it has ended.
     pub closed: bool,
+    /// Passes of thinking about this state.
+    pub passes: u64,
+    /// The plan of this state, once worked out.
+    pub planned: Option<Planned>,
 }
 
 impl Visit {
@@ -62,6 +67,8 @@ impl Visit {
             retracted: BTreeSet::new(),
             verdict: None,
             closed: false,
+            passes: 1,
+            planned: None,
         };
         visit.renew_available();
         Ok(visit)
@@ -108,7 +115,7 @@ impl Visit {
     }
 
     /// The ground that the rules of safety stand on.
-    fn ground<'a>(engine: &'a Engine, available: &'a [Check]) -> Ground<'a> {
+    pub(super) fn ground<'a>(engine: &'a Engine, available: &'a [Check]) -> Ground<'a> {
         Ground {
             site: engine.site(),
             numbers: &engine.knowledge().safety,
@@ -127,18 +134,6 @@ impl Visit {
     /// What the rules alone say of a test: for lists that nobody acts on.
     pub fn clear_by_rules(&self, check: &Check) -> Verdict {
         Gate::new(Self::ground(&self.engine, &self.available)).clear(check, &self.safety, None)
-    }
-
-    /// Every test that may be advised now.
-    pub fn cleared(&mut self) -> Vec<Cleared<Check>> {
-        let gate = Gate::new(Self::ground(&self.engine, &self.available));
-        let (safety, available) = (&self.safety, &self.available);
-        self.mind.with_hazards(|hazards| {
-            let worth = available.iter().filter(|check| !check.recheck_only);
-            worth
-                .filter_map(|check| gate.clear(check, safety, Some(hazards)).cleared())
-                .collect()
-        })
     }
 
     /// Whether a reading of the test may be taken in.
@@ -186,8 +181,20 @@ impl Visit {
     /// `internal`: an event that this site or this knowledge cannot have had.
     pub fn apply(&mut self, record: &Record, earlier: &[Record]) -> Result<(), SessionError> {
         let entry = record.n;
+        if !matches!(
+            record.event,
+            Event::Note(_) | Event::Advised(_) | Event::Verdict(_)
+        ) {
+            self.passes = 1;
+            self.planned = None;
+        }
         match &record.event {
-            Event::Opened(_) | Event::Note(_) | Event::Advised(_) => {}
+            Event::Opened(_) | Event::Note(_) => {}
+            Event::Advised(advised) if advised.passes != self.passes => {
+                self.passes = advised.passes;
+                self.planned = None;
+            }
+            Event::Advised(_) => {}
             Event::Symptom(symptom) => {
                 self.mind.symptom(entry, symptom);
                 if self
