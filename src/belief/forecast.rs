@@ -116,10 +116,11 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
     for pick in picks {
         // Equal draws (heavy weights) need no second solution.
         if pick == previous {
-            for f in &mut out {
-                if let Some(&last) = f.ways.last() {
-                    f.ways.push(last);
-                }
+            for (f, faint) in out.iter_mut().zip(&faint) {
+                // A fault that comes and goes has two ways to each draw: shown, and not.
+                let of_one = if matches!(faint, Some((_, Some(_)))) { 2 } else { 1 };
+                let first = f.ways.len().saturating_sub(of_one);
+                f.ways.extend_from_within(first..);
             }
             continue;
         }
