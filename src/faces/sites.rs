@@ -42,12 +42,12 @@ fn known(knowledge: &Knowledge) -> Known {
 pub fn check(knowledge: Knowledge, name: &str, paper: &mut Paper<impl Write>) -> Result<(), Trouble> {
     let given = document(&knowledge, name)?;
     let kit: Vec<String> = knowledge.kit.iter().map(|row| row.kind.clone()).collect();
-    let engine = Engine::new(knowledge.into(), &given, &kit)?;
+    let engine = Engine::new(&knowledge, &given, &kit)?;
     let mut page = Page::new();
-    page.line(summary(&engine.site));
+    page.line(summary(engine.site()));
     page.line(
         Text::new()
-            .value(engine.checks.len().to_string())
+            .value(engine.checks().len().to_string())
             .plain(" tests at places can be made here with a full kit."),
     );
     if !engine.warnings.is_empty() {

@@ -67,7 +67,7 @@ pub struct Names<'a>(pub &'a Engine);
 impl Names<'_> {
     /// A place, terminal, device or end.
     pub fn place(self, id: &str) -> String {
-        name_of(&self.0.site, id)
+        name_of(self.0.site(), id)
     }
 
     /// Several of them.
@@ -77,7 +77,7 @@ impl Names<'_> {
 
     /// Faults, as a person says them.
     pub fn faults(self, faults: &[Fault]) -> String {
-        describe(&self.0.knowledge, &self.0.site, faults).unwrap_or_else(|_| {
+        describe(self.0.knowledge(), self.0.site(), faults).unwrap_or_else(|_| {
             let each = faults.iter().map(|fault| format!("{} at {}", fault.kind, self.place(&fault.at)));
             each.collect::<Vec<_>>().join(", and ")
         })
@@ -85,7 +85,7 @@ impl Names<'_> {
 
     /// What to do about faults.
     pub fn repair(self, faults: &[Fault]) -> String {
-        repair_text(&self.0.knowledge, &self.0.site, faults).unwrap_or_default()
+        repair_text(self.0.knowledge(), self.0.site(), faults).unwrap_or_default()
     }
 
     /// A test at a place.
@@ -95,7 +95,7 @@ impl Names<'_> {
 
     /// A complaint.
     pub fn symptom(self, kind: &str, at: Option<&str>) -> String {
-        let name = self.0.knowledge.symptom(kind).map_or(kind, |row| row.name.as_str());
+        let name = self.0.knowledge().symptom(kind).map_or(kind, |row| row.name.as_str());
         match at {
             Some(at) => format!("{name}, {}", self.place(at)),
             None => name.to_owned(),

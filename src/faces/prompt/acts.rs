@@ -111,8 +111,8 @@ impl Desk {
     /// The id of a place that was named by its id, or by its name as far as that is clear.
     fn resolve(&self, text: &str) -> String {
         let engine = self.session.engine();
-        let all = spots(&engine.site);
-        let breakers = engine.site.boards.iter().flat_map(|b| &b.circuits).map(|c| format!("{}.breaker", c.id));
+        let all = spots(engine.site());
+        let breakers = engine.site().boards.iter().flat_map(|b| &b.circuits).map(|c| format!("{}.breaker", c.id));
         let ids: Vec<String> = all.into_keys().chain(breakers).collect();
         if ids.iter().any(|id| id == text) {
             return text.to_owned();

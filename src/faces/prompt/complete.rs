@@ -24,13 +24,13 @@ impl Vocabulary {
     pub fn of(desk: &Desk) -> Self {
         let engine = desk.session().engine();
         let mut tests: BTreeMap<String, BTreeSet<String>> = BTreeMap::new();
-        for check in engine.checks.iter() {
+        for check in engine.checks() {
             tests.entry(check.test.clone()).or_default().insert(check.at.clone());
         }
         Self {
-            symptoms: engine.knowledge.symptoms.iter().map(|row| row.kind.clone()).collect(),
-            places: spots(&engine.site).into_keys().collect(),
-            equipment: engine.site.equipment.iter().map(|item| item.id.clone()).collect(),
+            symptoms: engine.knowledge().symptoms.iter().map(|row| row.kind.clone()).collect(),
+            places: spots(engine.site()).into_keys().collect(),
+            equipment: engine.site().equipment.iter().map(|item| item.id.clone()).collect(),
             tests,
         }
     }

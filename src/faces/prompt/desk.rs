@@ -120,7 +120,7 @@ impl Desk {
     /// What is said first.
     pub fn greeting(&self, answer: &OpenAnswer) -> Page {
         let mut page = Page::new();
-        let site = &self.session.engine().site;
+        let site = self.session.engine().site();
         page.line(
             Text::new()
                 .with(Meaning::Place, site.name.clone())
@@ -170,7 +170,7 @@ impl Desk {
 
     /// `service`, boards and circuits.
     pub(super) fn all_places(&self) -> Vec<String> {
-        let boards = &self.session.engine().site.boards;
+        let boards = &self.session.engine().site().boards;
         let each = boards
             .iter()
             .flat_map(|board| std::iter::once(&board.id).chain(board.circuits.iter().map(|circuit| &circuit.id)));
@@ -179,7 +179,7 @@ impl Desk {
 
     /// Orders that the complaints owe.
     pub(super) fn orders(&self) -> Vec<Warning> {
-        let knowledge = &self.session.engine().knowledge;
+        let knowledge = self.session.engine().knowledge();
         let mut all: Vec<Warning> = Vec::new();
         for record in self.session.records() {
             if let Event::Symptom(symptom) = &record.event

@@ -182,7 +182,7 @@ impl Desk {
         let wanted = words.join(" ").to_lowercase();
         let mut table = Table::new(1);
         let mut page = Page::new();
-        let all = spots(&self.session.engine().site);
+        let all = spots(self.session.engine().site());
         let found: Vec<(&String, String)> = all
             .keys()
             .map(|id| (id, self.names().place(id)))
@@ -204,7 +204,7 @@ impl Desk {
         let engine = self.session.engine();
         let have: Vec<String> = engine.kit.iter().cloned().collect();
         let lack: Vec<String> =
-            engine.knowledge.kit.iter().map(|row| row.kind.clone()).filter(|kind| !engine.kit.contains(kind)).collect();
+            engine.knowledge().kit.iter().map(|row| row.kind.clone()).filter(|kind| !engine.kit.contains(kind)).collect();
         let mut page = Page::new();
         page.hang(Text::new().dim("here"), 8, list(&have));
         page.hang(Text::new().dim("not"), 8, list(&lack));

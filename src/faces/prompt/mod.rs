@@ -60,7 +60,7 @@ pub fn terminal_width() -> Option<usize> {
 fn open(options: &Options) -> Result<(Session, OpenAnswer), Trouble> {
     let knowledge = Arc::clone(&options.knowledge);
     if let Some(path) = &options.resume {
-        return Ok(Session::resume(knowledge, Clock::System, path)?);
+        return Ok(Session::resume(&knowledge, Clock::System, path)?);
     }
     let site = document(&knowledge, &options.site)?;
     let log = match &options.log {
@@ -68,7 +68,7 @@ fn open(options: &Options) -> Result<(Session, OpenAnswer), Trouble> {
         None => Log::in_memory(),
     };
     let ask = Open { site: Some(site), path: None, kit: options.kit.clone(), seed: options.seed };
-    Session::open(knowledge, Clock::System, log, &ask).map_err(|error| match (error.code, &options.log) {
+    Session::open(&knowledge, Clock::System, log, &ask).map_err(|error| match (error.code, &options.log) {
         (ErrorCode::LogNotEmpty, Some(path)) => Trouble::Usage {
             message: format!("{}: {error}", path.display()),
             hint: format!("go on with it by --resume {}, or name a new file", path.display()),

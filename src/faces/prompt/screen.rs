@@ -115,7 +115,7 @@ impl Desk {
                 Text::new().plain("Say what is wrong: ").word("symptom KIND at PLACE").plain(", with one of these kinds:"),
             );
             let mut table = Table::new(1);
-            for row in &self.session.engine().knowledge.symptoms {
+            for row in &self.session.engine().knowledge().symptoms {
                 table.row(vec![Text::new().word(row.kind.clone()).into(), Cell::from(row.name.clone())]);
             }
             page.table(MARGIN, table);
