@@ -5,6 +5,7 @@
 
 use super::cloud::{Draws, aim, shown};
 use super::model::Model;
+use super::nearness::{Near, near};
 use super::world::World;
 use crate::checks::sign_at;
 use crate::faults::Hypothesis;
@@ -91,8 +92,12 @@ pub fn log_probability(
             1.0 - h
                 .kinds
                 .iter()
-                .filter_map(|&k| model.knowledge.faults.get(k))
-                .map(|k| 1.0 - k.complaints.get(&complaint.kind).copied().unwrap_or(0.0))
+                .zip(&h.faults)
+                .filter_map(|(&k, fault)| Some((model.knowledge.faults.get(k)?, fault)))
+                .map(|(k, fault)| {
+                    let p = k.complaints.get(&complaint.kind).copied().unwrap_or(0.0);
+                    1.0 - p * place_factor(model, row, complaint, &fault.at)
+                })
                 .product::<f64>()
         }
     };
@@ -105,6 +110,18 @@ pub fn log_probability(
         share + (1.0 - share) * row.floor
     };
     ln((table * factor).max(LEAST))
+}
+
+/// How much less likely a complaint that points at its own cause is where the fault is elsewhere.
+fn place_factor(model: &Model, row: &SymptomRow, complaint: &Complaint, fault: &str) -> f64 {
+    match (row.elsewhere, &complaint.at) {
+        (Some(elsewhere), Some(told)) => match near(&model.site, fault, told) {
+            Near::Here => 1.0,
+            Near::Around => elsewhere.sqrt(),
+            Near::Away => elsewhere,
+        },
+        _ => 1.0,
+    }
 }
 
 fn share(

@@ -10,6 +10,7 @@ pub mod complaint;
 pub mod fit;
 pub mod forecast;
 pub mod model;
+mod nearness;
 pub mod odds;
 pub mod reading;
 pub mod sight;

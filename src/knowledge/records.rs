@@ -514,6 +514,10 @@ pub struct SymptomRow {
     pub signs: Vec<Sign>,
     /// Factor where no sign shows.
     pub floor: f64,
+    /// Factor where the fault sits at quite another place than the one told (its square root where both
+    /// share a circuit or board): for complaints that point at their own cause. Absent: none.
+    #[serde(default)]
+    pub elsewhere: Option<f64>,
     /// P(complaint of this kind | nothing wrong now, and there was a call).
     pub nothing_wrong: f64,
 }

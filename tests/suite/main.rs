@@ -1,5 +1,7 @@
 //! The crate seen from outside: one binary, so that it links once.
 
 mod architecture;
+mod bad_knowledge;
+mod knowledge_on_sites;
 mod reference;
 mod source;
