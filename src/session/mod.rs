@@ -11,6 +11,7 @@ mod end;
 pub mod engine;
 mod error;
 pub mod event;
+mod explain;
 mod hold;
 pub mod limits;
 pub mod log;

@@ -250,6 +250,11 @@ fn document(knowledge: &Knowledge, ask: &command::Open) -> Result<Value, Session
     match (&ask.site, &ask.path) {
         (Some(site), None) => Ok(site.clone()),
         (None, Some(path)) => {
+            if let Err(error) = std::fs::File::open(path) {
+                let text = format!("the site file {path} cannot be read: {error}");
+                let hint = "check the name, and that this user may read it";
+                return Err(SessionError::new(ErrorCode::Io, text, hint));
+            }
             let known = Known::new(
                 &knowledge.equipment,
                 knowledge.rules.iter().map(|rule| rule.id.as_str()),

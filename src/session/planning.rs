@@ -1,12 +1,12 @@
 //! The plan of one state of the visit: what safety lets through of what may tell most, and whether to stop.
 
 use super::engine::Engine;
+use super::explain::{expects, faults_of, says, verdict_why};
 use super::rechecks::nearest_check;
-use super::view::{AdviceView, CouldBe, ExpectView, VerdictView};
+use super::view::{AdviceView, CouldBe, VerdictView};
 use super::visit::Visit;
-use crate::belief::{Belief, Candidate, Forecast};
 use crate::checks::Check;
-use crate::faults::{Fault, NOTHING_WRONG, UNLISTED, describe};
+use crate::faults::UNLISTED;
 use crate::plan::{Advice, Now, Plan, Verdict, minutes_of, plan, shortlist, suspect, verdict};
 use crate::quantity::format_parsed;
 use crate::safety::{Cleared, Gate};
@@ -19,12 +19,6 @@ const MOST_PASSES: u64 = 8;
 
 /// Leading hypotheses whose confirming looks are weighed too.
 const CONFIRMED: usize = 5;
-
-/// Hypotheses whose expected readings an advice shows.
-const EXPECTED: usize = 6;
-
-/// Words less likely than this are left out of what is expected.
-const RARE: f64 = 0.005;
 
 /// All that was worked out of one state.
 #[derive(Debug)]
@@ -46,7 +40,11 @@ impl Visit {
     pub fn planned(&mut self) -> &Planned {
         let planned = match self.planned.take() {
             Some(planned) => planned,
-            None => self.work_out(),
+            None => {
+                let planned = self.work_out();
+                self.standing = Some(self.view_of(&planned));
+                planned
+            }
         };
         self.planned.insert(planned)
     }
@@ -156,36 +154,37 @@ impl Visit {
 
     /// The verdict as an answer shows it.
     pub fn verdict_view(&mut self) -> Option<VerdictView> {
-        let engine = std::sync::Arc::clone(&self.engine);
-        let found = self.planned().verdict.clone()?;
-        let belief = self.mind.belief();
-        let candidate = belief.candidates().get(found.candidate)?;
+        if self.standing.is_none() {
+            self.planned();
+        }
+        self.standing.clone().flatten()
+    }
+
+    fn view_of(&self, planned: &Planned) -> Option<VerdictView> {
+        let engine = &self.engine;
+        let found = planned.verdict.as_ref()?;
+        let candidate = self.mind.belief().candidates().get(found.candidate)?;
         let confirm = found
             .confirm
             .and_then(|row| engine.checks().get(row))
             .map(Engine::key);
-        let could_also_be = found
-            .could_be
-            .iter()
-            .map(|(group, p)| CouldBe {
-                group: group.clone(),
-                p: *p,
-            })
-            .collect();
+        let could_be = found.could_be.iter().map(|(group, p)| CouldBe {
+            group: group.clone(),
+            p: *p,
+        });
         let faults = if found.group == UNLISTED {
             Vec::new()
         } else {
             faults_of(candidate).to_vec()
         };
-        let why = verdict_why(&engine, &found, candidate);
         Some(VerdictView {
-            group: found.group,
+            group: found.group.clone(),
             faults,
             p: found.p,
-            action: found.action,
-            why,
+            action: found.action.clone(),
+            why: verdict_why(engine, found, candidate),
             confirm,
-            could_also_be,
+            could_also_be: could_be.collect(),
         })
     }
 
@@ -331,72 +330,4 @@ impl Visit {
             .find(|candidate| candidate.group() == group);
         says(engine, group, leader)
     }
-}
-
-/// The faults of a candidate.
-pub fn faults_of(candidate: &Candidate) -> &[Fault] {
-    candidate
-        .hypothesis
-        .as_ref()
-        .map(|h| h.faults.as_slice())
-        .unwrap_or_default()
-}
-
-fn says(engine: &Engine, group: &str, leader: Option<&Candidate>) -> String {
-    match group {
-        NOTHING_WRONG => "nothing wrong".to_owned(),
-        UNLISTED => "something not on the list".to_owned(),
-        _ => {
-            let faults = leader.map(faults_of).unwrap_or_default();
-            describe(engine.knowledge(), engine.site(), faults).unwrap_or_else(|_| group.to_owned())
-        }
-    }
-}
-
-fn verdict_why(engine: &Engine, found: &Verdict, candidate: &Candidate) -> String {
-    let who = says(engine, &found.group, Some(candidate));
-    let (act, test) = found.costs;
-    let odds = format!("{who}: {:.0} in 100", 100.0 * found.p);
-    let costs = if test.is_finite() {
-        format!(
-            "acting on it now is expected to take {act:.0} min, going on with the best test {test:.0} min"
-        )
-    } else {
-        "no test that can be done would change that".to_owned()
-    };
-    let alone = if found.robust {
-        ""
-    } else {
-        "; it rests on one reading"
-    };
-    format!("{odds}; {costs}{alone}")
-}
-
-/// What the leading hypotheses would read, the likeliest first.
-fn expects(belief: &Belief, column: &[(usize, Forecast)]) -> Vec<ExpectView> {
-    let shown = column.iter().take(EXPECTED);
-    shown
-        .filter_map(|(index, forecast)| expect(belief.candidates().get(*index)?.id(), forecast))
-        .collect()
-}
-
-fn expect(hypothesis: &str, forecast: &Forecast) -> Option<ExpectView> {
-    let hypothesis = hypothesis.to_owned();
-    let finite = |at: f64| forecast.quantile(at).filter(|value| value.is_finite());
-    if let (Some(p05), Some(p50), Some(p95)) = (finite(0.05), finite(0.5), finite(0.95)) {
-        return Some(ExpectView::Number {
-            hypothesis,
-            p05,
-            p50,
-            p95,
-        });
-    }
-    let likely = forecast.words().into_iter().filter(|(_, p)| *p >= RARE);
-    let outcomes: std::collections::BTreeMap<_, _> = likely
-        .map(|(word, p)| (word.text().to_owned(), p))
-        .collect();
-    (!outcomes.is_empty()).then_some(ExpectView::Words {
-        hypothesis,
-        outcomes,
-    })
 }

@@ -81,7 +81,11 @@ impl Session {
         self.shown.retain(|shown| *shown != key);
         self.shown.insert(0, key.clone());
         self.check_owed(&key).ok_or_else(|| {
-            SessionError::new(ErrorCode::Internal, format!("`{test}` is gone"), "take another test")
+            SessionError::new(
+                ErrorCode::Internal,
+                format!("`{test}` is gone"),
+                "take another test",
+            )
         })
     }
 

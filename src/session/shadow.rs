@@ -5,9 +5,10 @@ use std::sync::Arc;
 
 use super::engine::Engine;
 use super::error::{ErrorCode, SessionError};
+use super::explain::faults_of;
 use crate::belief::cloud::Draws;
 use crate::belief::{Belief, Candidate};
-use crate::faults::{Fault, NOTHING_WRONG, describe, edits};
+use crate::faults::{NOTHING_WRONG, describe, edits};
 use crate::numeric::stats::systematic;
 use crate::safety::{Body, CircuitSimulator, Drawn, HazardBook, Hazards, World};
 
@@ -131,14 +132,6 @@ impl Shadow {
         );
         count
     }
-}
-
-fn faults_of(candidate: &Candidate) -> &[Fault] {
-    candidate
-        .hypothesis
-        .as_ref()
-        .map(|h| h.faults.as_slice())
-        .unwrap_or_default()
 }
 
 /// One draw as edits with their values; a fault without an edit leaves the circuit as it is.

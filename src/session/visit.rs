@@ -9,13 +9,15 @@ use super::engine::Engine;
 use super::error::{ErrorCode, SessionError};
 use super::event::{Event, TestAt, VerdictStands};
 use super::hold;
+use super::limits::place_of;
 use super::mind::Mind;
 use super::planning::Planned;
 use super::rechecks;
+use super::view::VerdictView;
 use crate::checks::{Check, energised};
-use crate::knowledge::Setup;
+use crate::knowledge::{Hookup, Setup};
 use crate::network::Unnamed;
-use crate::quantity::Parsed;
+use crate::quantity::{Parsed, ParsedValue, Word};
 use crate::safety::{
     Gate, Ground, HoldPoint, ReadingStop, State, StateEvent, Verdict, is_standing,
 };
@@ -45,6 +47,8 @@ pub struct Visit {
     pub closed: bool,
     /// Passes of thinking about this state.
     pub passes: u64,
+    /// The verdict as last worked out; a hold point that was done leaves it as it is.
+    pub standing: Option<Option<VerdictView>>,
     /// The plan of this state, once worked out.
     pub planned: Option<Planned>,
 }
@@ -68,6 +72,7 @@ impl Visit {
             verdict: None,
             closed: false,
             passes: 1,
+            standing: None,
             planned: None,
         };
         visit.renew_available();
@@ -187,6 +192,9 @@ impl Visit {
         ) {
             self.passes = 1;
             self.planned = None;
+            if !Self::only_a_point(&record.event) {
+                self.standing = None;
+            }
         }
         match &record.event {
             Event::Opened(_) | Event::Note(_) => {}
@@ -242,6 +250,11 @@ impl Visit {
         Ok(())
     }
 
+    /// Whether an event is a hold point done, with nothing read: it moves no odds and closes no test.
+    fn only_a_point(event: &Event) -> bool {
+        matches!(event, Event::HoldPoint(point) if point.done && point.readings.as_ref().is_none_or(BTreeMap::is_empty))
+    }
+
     fn note(&mut self, event: &StateEvent<'_>) {
         self.safety
             .apply(&Self::ground(&self.engine, &self.available), event);
@@ -255,6 +268,21 @@ impl Visit {
             value: &parsed.value,
             entry,
         });
+        // An instrument that trips the RCD ahead of it leaves it open.
+        let tripped = matches!(parsed.value, ParsedValue::Word { word: Word::Trips });
+        let ahead = || {
+            place_of(&self.engine, &check.at)
+                .and_then(|place| place.rcd(self.engine.site()).map(|(_, id)| id.to_owned()))
+        };
+        if tripped
+            && !matches!(check.hookup, Hookup::Holds { .. })
+            && let Some(device) = ahead()
+        {
+            self.note(&StateEvent::FoundTripped {
+                device: &device,
+                entry,
+            });
+        }
         self.place.clone_from(&check.place);
     }
 

@@ -3,5 +3,6 @@
 mod architecture;
 mod bad_knowledge;
 mod knowledge_on_sites;
+mod pipe;
 mod reference;
 mod source;
