@@ -1,12 +1,12 @@
 //! Every check of knowledge at every place of a site that it fits.
 
 use super::check::Check;
-use super::energised::energised;
+use super::energised::energised_in;
 use super::expand::{Filler, Miss};
 use super::select::{Instance, instances};
 use crate::knowledge::{CheckForm, Hookup, Knowledge, Setup, SourceMode};
 use crate::network::{Network, Unnamed};
-use crate::site::{Site, Spot, ends, holds};
+use crate::site::{Site, Spot, Topology, ends, holds};
 
 /// A mistake of the knowledge files that a site brings out.
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
@@ -81,6 +81,7 @@ fn can_be_looked_at(at: &str, site: &Site) -> bool {
 }
 
 fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError> {
+    let topology = Topology::new(site);
     let mut out: Vec<Check> = Vec::new();
     for (row, form) in knowledge.checks.iter().enumerate() {
         let fail = |why: String| CheckError {
@@ -101,7 +102,7 @@ fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError
             if !fits {
                 continue;
             }
-            match made(row, form, &instance, site) {
+            match made(row, form, &instance, site, &topology) {
                 Ok(check) => {
                     let same =
                         |have: &Check| have.setup == check.setup && have.hookup == check.hookup;
@@ -117,7 +118,13 @@ fn expanded(knowledge: &Knowledge, site: &Site) -> Result<Vec<Check>, CheckError
     Ok(out)
 }
 
-fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Result<Check, Miss> {
+fn made(
+    row: usize,
+    form: &CheckForm,
+    instance: &Instance,
+    site: &Site,
+    topology: &Topology,
+) -> Result<Check, Miss> {
     let filler = Filler { site, instance };
     let hookup = filler.hookup(&form.hookup)?;
     let setup = sources_off(filler.setup(&form.setup)?, &hookup, site);
@@ -127,7 +134,7 @@ fn made(row: usize, form: &CheckForm, instance: &Instance, site: &Site) -> Resul
         form: row,
         name: filler.text(&form.name)?,
         text: filler.text(&form.text)?,
-        energised: energised(&setup, &hookup, site),
+        energised: energised_in(topology, &setup, &hookup, site),
         setup,
         hookup,
         unit: form.unit.clone(),

@@ -14,28 +14,50 @@ use crate::site::{Site, Topology};
 /// Readings that need the supply (volts, amperes, loops, RCD tests, a device closed) are taken live
 /// while anything of the site is supplied; dead readings and looks follow the parts they touch.
 pub fn energised(setup: &Setup, hookup: &Hookup, site: &Site) -> bool {
-    let live = supplied(setup, site);
-    let touches = |id: &String| {
-        parts_of(id, setup, site)
-            .iter()
-            .any(|part| live.contains(part))
-    };
-    match hookup {
+    energised_in(&Topology::new(site), setup, hookup, site)
+}
+
+/// As [`energised`], on the site's graph built once for many checks.
+pub fn energised_in(topology: &Topology, setup: &Setup, hookup: &Hookup, site: &Site) -> bool {
+    let touched: Vec<&String> = match hookup {
         Hookup::Insulation {
             between: [a, b], ..
-        } => a.iter().chain(b).any(touches),
-        Hookup::Continuity { between } => between.iter().any(touches),
-        Hookup::Seen { at, .. } => touches(at),
-        _ => !live.is_empty(),
-    }
+        } => a.iter().chain(b).collect(),
+        Hookup::Continuity { between } => between.iter().collect(),
+        Hookup::Seen { at, .. } => vec![at],
+        _ => {
+            return !setup.open.iter().any(|d| d == "service.fuse")
+                || !alone(setup, site).is_empty();
+        }
+    };
+    let live = supplied_in(topology, setup, site);
+    touched.into_iter().any(|id| {
+        parts_of(id, setup, site)
+            .iter()
+            .any(|part| live.contains(part.as_str()))
+    })
 }
 
 /// The parts whose lines are supplied, by the ids of [`Topology`]: `service`, the load side of each main
 /// switch by its id, boards, RCDs, circuits, points, equipment, and submains as `shed.feed`, `shed.in`.
 pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
+    supplied_in(&Topology::new(site), setup, site)
+        .into_iter()
+        .map(str::to_owned)
+        .collect()
+}
+
+fn supplied_in<'t>(topology: &'t Topology, setup: &Setup, site: &Site) -> BTreeSet<&'t str> {
     let open = setup.open.iter().cloned().collect();
     let lifted = setup.lift.iter().cloned().collect();
-    let alone = site
+    let mut live = topology.supplied(&open, &lifted, &alone(setup, site));
+    live.remove("network");
+    live
+}
+
+/// Sources that may feed the site alone in this setup.
+fn alone<'s>(setup: &Setup, site: &'s Site) -> Vec<&'s str> {
+    let may = site
         .sources
         .iter()
         .filter(|source| match setup.sources.get(&source.id) {
@@ -43,10 +65,7 @@ pub fn supplied(setup: &Setup, site: &Site) -> BTreeSet<String> {
             Some(SourceMode::Backup) => true,
             Some(SourceMode::On) | None => source.backup,
         });
-    let backfeeds: Vec<&str> = alone.map(|source| source.id.as_str()).collect();
-    let mut live = Topology::new(site).supplied(&open, &lifted, &backfeeds);
-    live.remove("network");
-    live
+    may.map(|source| source.id.as_str()).collect()
 }
 
 /// The parts, as [`supplied`] names them, that a terminal, end or place belongs to.

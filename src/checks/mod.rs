@@ -13,7 +13,7 @@ pub use available::{availability, whole_kit};
 pub use catalogue::{CheckError, catalogue, misfits};
 pub use check::Check;
 pub use effort::{transition, walk};
-pub use energised::{energised, supplied};
+pub use energised::{energised, energised_in, supplied};
 pub use sign::sign_at;
 
 #[cfg(test)]

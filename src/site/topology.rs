@@ -316,7 +316,7 @@ impl Topology {
         open: &BTreeSet<String>,
         lifted: &BTreeSet<String>,
         backfeeds: &[&str],
-    ) -> BTreeSet<String> {
+    ) -> BTreeSet<&str> {
         let closed =
             EdgeFiltered::from_fn(&self.graph, |edge| edge.weight().is_closed(open, lifted));
         let both_ways = UndirectedAdaptor(&closed);
@@ -325,7 +325,7 @@ impl Topology {
         for start in starts.filter_map(|id| self.node(id)) {
             let mut walk = Dfs::new(both_ways, start);
             while let Some(node) = walk.next(both_ways) {
-                out.extend(self.graph[node].iter().cloned());
+                out.extend(self.graph[node].iter().map(String::as_str));
             }
         }
         out
@@ -489,7 +489,7 @@ mod tests {
                     spot.class(),
                     "board" | "rcd" | "circuit" | "point" | "equipment" | "source"
                 ) {
-                    assert!(all.contains(&id), "{name}: {id}");
+                    assert!(all.contains(id.as_str()), "{name}: {id}");
                 }
             }
         }

@@ -6,15 +6,11 @@ use super::circuits;
 use super::devices::{mains, rcd_lines, rcds};
 use super::error::SiteError;
 use super::feeds::{Fed, Feeds, phase_of, phase_word, wanted};
-use super::form::{
-    BoardForm, BreakerForm, CurveForm, LinkAtForm, MainSwitchForm, RcdForm, RcdTypeForm,
-    SubmainForm,
-};
-use super::number::{AMPS, METRES, MILLIAMPS, MM2};
+use super::form::{BoardForm, BreakerForm, CurveForm, LinkAtForm, SubmainForm};
+use super::number::{AMPS, METRES, MM2};
 use super::reader::{Reader, metal};
 use crate::site::model::{
-    Board, Breaker, Cable, Circuit, Curve, Earthing, Feed, LinkAt, MainSwitch, Phase, Rcd, RcdType,
-    System,
+    Board, Breaker, Cable, Curve, Earthing, Feed, LinkAt, MainSwitch, Phase, System,
 };
 
 /// What the rest of the file says that boards depend on.
