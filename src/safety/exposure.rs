@@ -1,8 +1,8 @@
 //! What a check does to the circuit while it is made: the states it passes, and the current its instrument drives.
 
 use super::Ground;
-use super::hold::{isolates, isolation};
-use super::places::{conductors_at, mains_of, place_of};
+use super::isolate::{isolates, isolation};
+use super::places::{conductors_at, cuts, mains_of, place_of};
 use super::point::state_key;
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Meter, Setup, SourceMode, UnplugSet, procedure::MeterWord};
@@ -21,6 +21,12 @@ pub(super) struct Stance {
     pub brief: bool,
     /// Everything ahead of the boards is open: only what comes from outside can flow.
     pub dead: bool,
+    /// The earthing or the incoming neutral is parted.
+    pub parts_earthing: bool,
+    /// Amperes that loads, burdens and equipment switched on add at most.
+    pub added_amps: f64,
+    /// Circuits that lose load, where losing it may unbalance lines or leave a source unmatched.
+    pub lose: Vec<String>,
 }
 
 impl Stance {
@@ -42,43 +48,91 @@ impl Stance {
             self.brief
         )
     }
+}
 
-    /// Amperes that the test adds at most: loads, burdens, equipment switched on; and, on three phases or
-    /// beside a source, what taking away may add.
-    pub fn added_amps(&self, ground: &Ground<'_>, line_amps: f64) -> f64 {
-        let site = ground.site;
-        let volts = site.supply.volts;
-        let shunts: f64 = self
-            .burden
-            .iter()
-            .map(|e| {
-                if let Edit::Shunt { ohms, .. } = e {
-                    volts / ohms
-                } else {
-                    0.0
-                }
-            })
-            .sum();
-        let watts = |id: &String| {
-            site.equipment_index(id)
-                .and_then(|e| site.equipment.get(e))
-                .and_then(|e| e.watts)
-                .unwrap_or(UNKNOWN_WATTS)
-        };
-        let on: f64 = self.setup.on.iter().map(watts).sum::<f64>() / volts;
-        let takes_away = !self.setup.open.is_empty()
-            || !self.setup.unplug.is_empty()
-            || !self.setup.off.is_empty();
-        let unbalances = takes_away && (site.supply.phases == 3 || !site.sources.is_empty());
-        let sources = !self.setup.sources.is_empty() && !site.sources.is_empty();
-        shunts
-            + on
-            + if unbalances || sources {
-                line_amps
-            } else {
-                0.0
-            }
+/// A stance with its sums.
+fn stance(
+    ground: &Ground<'_>,
+    setup: Setup,
+    burden: Vec<Edit>,
+    lifting: Vec<String>,
+    brief: bool,
+    dead: bool,
+) -> Stance {
+    let parts_earthing = setup.lift.iter().any(|end| parts_earthing(end));
+    let added_amps = added_amps(ground, &setup, &burden);
+    let lose = if dead {
+        Vec::new()
+    } else {
+        losing(ground, &setup)
+    };
+    Stance {
+        setup,
+        burden,
+        lifting,
+        brief,
+        dead,
+        parts_earthing,
+        added_amps,
+        lose,
     }
+}
+
+fn added_amps(ground: &Ground<'_>, setup: &Setup, burden: &[Edit]) -> f64 {
+    let site = ground.site;
+    let volts = site.supply.volts;
+    let through = |edit: &Edit| match edit {
+        Edit::Shunt { ohms, .. } => volts / ohms,
+        _ => 0.0,
+    };
+    let watts = |id: &String| {
+        site.equipment_index(id)
+            .and_then(|e| site.equipment.get(e))
+            .and_then(|e| e.watts)
+            .unwrap_or(UNKNOWN_WATTS)
+    };
+    burden.iter().map(through).sum::<f64>() + setup.on.iter().map(watts).sum::<f64>() / volts
+}
+
+/// Circuits that a setup takes load off; on one phase without a source that only takes current away.
+fn losing(ground: &Ground<'_>, setup: &Setup) -> Vec<String> {
+    let site = ground.site;
+    let lone = site.supply.phases == 1 && site.sources.is_empty();
+    if lone
+        || (setup.open.is_empty()
+            && setup.unplug.is_empty()
+            && setup.off.is_empty()
+            && setup.sources.is_empty())
+    {
+        return Vec::new();
+    }
+    let switched = |place: &str| {
+        cuts(site, place)
+            .iter()
+            .any(|cut| cut.iter().any(|d| setup.open.contains(d)))
+    };
+    let idle = |index: (usize, usize)| {
+        site.equipment.iter().any(|e| {
+            let here = (e.at.board, e.at.circuit) == index;
+            let pulled = match &setup.unplug {
+                UnplugSet::All(_) => e.plug,
+                UnplugSet::These(items) => items.contains(&e.id),
+            };
+            here && (pulled || setup.off.contains(&e.id))
+        })
+    };
+    let everywhere = !setup.sources.is_empty();
+    let circuits = site.boards.iter().enumerate().flat_map(|(b, board)| {
+        board
+            .circuits
+            .iter()
+            .enumerate()
+            .map(move |(c, circuit)| ((b, c), circuit))
+    });
+    circuits
+        .filter(|(index, circuit)| everywhere || switched(&circuit.id) || idle(*index))
+        .map(|(_, circuit)| circuit.id.clone())
+        .collect()
 }
 
 /// Equipment whose watts the site does not give is taken as the largest on a plug.
@@ -115,12 +169,8 @@ pub(super) fn stances(ground: &Ground<'_>, check: &Check) -> Vec<Stance> {
         let outside = mains_off(ground);
         let dead = outside.open.iter().all(|main| off.open.contains(main));
         let lift = check.setup.lift.clone();
-        let bare = |setup: Setup, lifting: Vec<String>, dead: bool| Stance {
-            setup,
-            burden: Vec::new(),
-            lifting,
-            brief: false,
-            dead,
+        let bare = |setup: Setup, lifting: Vec<String>, dead: bool| {
+            stance(ground, setup, Vec::new(), lifting, false, dead)
         };
         if dead {
             // Opening more behind open mains changes nothing: one state serves every such check.
@@ -150,13 +200,7 @@ pub(super) fn stances(ground: &Ground<'_>, check: &Check) -> Vec<Stance> {
         ..check.setup.clone()
     };
     if setup != Setup::default() || !burden.is_empty() {
-        all.push(Stance {
-            setup,
-            burden,
-            lifting: Vec::new(),
-            brief,
-            dead: false,
-        });
+        all.push(stance(ground, setup, burden, Vec::new(), brief, false));
     }
     all
 }

@@ -1,11 +1,14 @@
 //! The gate: the only place where a check is cleared for advice, and a reading let in.
 
 use super::Ground;
-use super::hazard::{Assessment, Hazards};
-use super::hold::{hold_points, isolation, make_safe};
+use super::hazard::Hazards;
+use super::hold::{hold_points, make_safe};
+use super::isolate::isolation;
+use super::needs::{quiet_check, quiet_proof};
 use super::point::{HoldPoint, Stage, marked, state_key};
-use super::rules::{self, Refusal, quiet_check, quiet_proof};
+use super::rules::{self, Refusal};
 use super::state::State;
+use super::world::Assessment;
 use crate::checks::Check;
 use crate::knowledge::Setup;
 

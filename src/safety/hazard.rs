@@ -8,140 +8,19 @@
 //! (IEC 60479-1). A step is at risk where it raises a touch above the limits that it does not pass as
 //! found, where a conductor to be lifted carries current, or where a part called dead is not.
 
-use std::collections::BTreeMap;
+use std::sync::Arc;
 
 use super::Ground;
 use super::body::{Body, Touch};
+use super::book::HazardBook;
 use super::exposure::{Stance, common_pairs, frame_pairs, stances};
-use super::hold::isolates;
+use super::isolate::isolates;
 use super::profile::Profile;
 use super::wants::before_lift;
-use super::words::terminal_name;
+use super::world::{Assessment, Raised, Simulator, World};
 use crate::checks::Check;
 use crate::knowledge::{Hookup, Meter, Setup};
 use crate::network::Edit;
-
-/// A hypothesis to simulate the test under.
-#[derive(Clone, Debug, PartialEq)]
-pub struct World {
-    /// Its id, stable within a visit.
-    pub id: String,
-    /// As a person says it after `if`: `the supply neutral is open`.
-    pub says: String,
-    /// Its probability now.
-    pub p: f64,
-    /// Values drawn for it.
-    pub draws: usize,
-}
-
-/// Whoever can solve the circuit under a hypothesis.
-pub trait Simulator {
-    /// What each hookup shows in `setup` under a hypothesis' draw, for each set of edits that a test adds;
-    /// nothing where it shows no number. Nothing trips.
-    fn read_each(
-        &mut self,
-        world: &World,
-        draw: usize,
-        setup: &Setup,
-        tests: &[Vec<Edit>],
-        hookups: &[Hookup],
-    ) -> Vec<Vec<Option<f64>>>;
-
-    /// The same with one set of edits.
-    fn read(
-        &mut self,
-        world: &World,
-        draw: usize,
-        setup: &Setup,
-        test: &[Edit],
-        hookups: &[Hookup],
-    ) -> Vec<Option<f64>> {
-        self.read_each(world, draw, setup, &[test.to_vec()], hookups)
-            .into_iter()
-            .next()
-            .unwrap_or_default()
-    }
-}
-
-impl<F> Simulator for F
-where
-    F: FnMut(&World, usize, &Setup, &[Edit], &[Hookup]) -> Vec<Option<f64>>,
-{
-    fn read_each(
-        &mut self,
-        world: &World,
-        draw: usize,
-        setup: &Setup,
-        tests: &[Vec<Edit>],
-        hookups: &[Hookup],
-    ) -> Vec<Vec<Option<f64>>> {
-        tests
-            .iter()
-            .map(|test| self(world, draw, setup, test, hookups))
-            .collect()
-    }
-}
-
-/// Something that a test raises, with the hypothesis under which it is worst.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Raised {
-    /// Where: a pair of terminals, or the end to be lifted and nothing.
-    pub between: [String; 2],
-    /// V, worst.
-    pub volts: f64,
-    /// A through a body, or in the conductor.
-    pub amps: f64,
-    /// The hypothesis, as a person says it.
-    pub says: String,
-    /// Its probability.
-    pub p: f64,
-}
-
-/// What simulating a check has shown.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct Assessment {
-    /// Worst touch of metal that many may touch, caused by the test itself.
-    pub touch: Option<Raised>,
-    /// Probability of all hypotheses under which there is such a touch.
-    pub touch_p: f64,
-    /// Worst current in a conductor to be lifted, over its limit.
-    pub lifting: Option<Raised>,
-    /// Worst touch of one frame.
-    pub frame: Option<Raised>,
-    /// Worst part called dead that is not; the prove-dead point finds it.
-    pub not_dead: Option<Raised>,
-}
-
-/// Findings kept between questions: they depend on stance and hypothesis, not on the odds.
-#[derive(Clone, Debug, Default)]
-pub struct HazardBook {
-    touch: BTreeMap<String, BTreeMap<String, Option<Raised>>>,
-    lifting: BTreeMap<String, BTreeMap<String, BTreeMap<String, f64>>>,
-    profiles: BTreeMap<String, Vec<Profile>>,
-}
-
-impl HazardBook {
-    /// An empty book.
-    pub fn new() -> Self {
-        Self::default()
-    }
-
-    /// Forgets everything (a repair changed the circuit, or draws were renewed).
-    pub fn clear(&mut self) {
-        *self = Self::default();
-    }
-
-    /// Forgets one hypothesis (its draws were renewed).
-    pub fn forget(&mut self, world: &str) {
-        self.touch
-            .values_mut()
-            .for_each(|by_world| drop(by_world.remove(world)));
-        self.lifting
-            .values_mut()
-            .for_each(|by_world| drop(by_world.remove(world)));
-        self.profiles.remove(world);
-    }
-}
 
 /// Everything the gate needs to simulate a check.
 pub struct Hazards<'a> {
@@ -150,6 +29,7 @@ pub struct Hazards<'a> {
     pub(super) body: &'a Body,
     pub(super) simulator: &'a mut dyn Simulator,
     ends: Option<Vec<String>>,
+    credible: Option<Vec<(usize, usize)>>,
     standing: Option<f64>,
 }
 
@@ -174,6 +54,7 @@ impl<'a> Hazards<'a> {
             body,
             simulator,
             ends: None,
+            credible: None,
             standing: None,
         }
     }
@@ -186,16 +67,15 @@ impl<'a> Hazards<'a> {
             .into_iter()
             .map(|s| (s.key(), s))
             .collect();
-        let worlds = self.worlds;
-        for world in worlds
-            .iter()
-            .filter(|w| !all.is_empty() && w.p >= ground.numbers.credible)
-        {
+        if all.is_empty() {
+            return result;
+        }
+        for (world, number) in self.credible(ground) {
             let mut touched = None;
             for (key, stance) in &all {
-                keep_worst(&mut touched, self.touch(ground, world, key, stance));
+                keep_worst(&mut touched, self.touch(ground, world, number, key, stance));
                 for end in stance.lifting.iter().filter(|end| !end.ends_with(".split")) {
-                    let amps = self.end_amps(ground, world, key, stance, end);
+                    let amps = self.end_amps(ground, (world, number), key, stance, end);
                     if amps > ground.numbers.lift_amps {
                         let flow = Touch { volts: 0.0, amps };
                         keep_worst(
@@ -224,11 +104,7 @@ impl<'a> Hazards<'a> {
         } else {
             Vec::new()
         };
-        let mut worlds: Vec<&World> = self
-            .worlds
-            .iter()
-            .filter(|w| w.p >= ground.numbers.credible)
-            .collect();
+        let mut worlds: Vec<&World> = self.credible(ground).into_iter().map(|(w, _)| w).collect();
         worlds.sort_by(|a, b| b.p.total_cmp(&a.p));
         let frames = frame_pairs(ground);
         for world in worlds.into_iter().take(DESCRIBED) {
@@ -281,12 +157,11 @@ impl<'a> Hazards<'a> {
     pub fn standing(&mut self, ground: &Ground<'_>) -> Option<Raised> {
         let mut worst = None;
         let pairs = common_pairs(ground);
-        let worlds = self.worlds;
-        for world in worlds.iter().filter(|w| w.p >= ground.numbers.credible) {
-            for profile in self.profiles(ground, world) {
-                for (pair, touch) in pairs.iter().zip(profile.touches) {
-                    if over(ground, false, touch) {
-                        keep_worst(&mut worst, Some(raised(pair, touch, world)));
+        for (world, number) in self.credible(ground) {
+            for profile in self.profiles(ground, world, number).iter() {
+                for (pair, touch) in pairs.iter().zip(&profile.touches) {
+                    if over(ground, false, *touch) {
+                        keep_worst(&mut worst, Some(raised(pair, *touch, world)));
                     }
                 }
             }
@@ -299,10 +174,9 @@ impl<'a> Hazards<'a> {
         if let Some(known) = self.standing {
             return known;
         }
-        let worlds = self.worlds;
         let mut sum = 0.0;
-        for world in worlds.iter().filter(|w| w.p >= ground.numbers.credible) {
-            let profiles = self.profiles(ground, world);
+        for (world, number) in self.credible(ground) {
+            let profiles = self.profiles(ground, world, number);
             let live = profiles
                 .iter()
                 .filter(|p| p.touches.iter().any(|t| over(ground, false, *t)))
@@ -313,15 +187,34 @@ impl<'a> Hazards<'a> {
         sum
     }
 
-    fn profiles(&mut self, ground: &Ground<'_>, world: &World) -> Vec<Profile> {
-        if let Some(known) = self.book.profiles.get(&world.id) {
-            return known.clone();
+    /// The credible hypotheses, each with its number in the book.
+    fn credible(&mut self, ground: &Ground<'_>) -> Vec<(&'a World, usize)> {
+        let worlds = self.worlds;
+        let book = &mut *self.book;
+        let number = || {
+            let credible = worlds
+                .iter()
+                .enumerate()
+                .filter(|(_, w)| w.p >= ground.numbers.credible);
+            credible.map(|(at, w)| (at, book.number(&w.id))).collect()
+        };
+        let known = self.credible.get_or_insert_with(number);
+        known
+            .iter()
+            .filter_map(|(at, number)| Some((worlds.get(*at)?, *number)))
+            .collect()
+    }
+
+    fn profiles(&mut self, ground: &Ground<'_>, world: &World, number: usize) -> Arc<Vec<Profile>> {
+        if let Some(known) = self.book.profiles(number) {
+            return known;
         }
         let ends = self.ends(ground);
         let all: Vec<Profile> = (0..world.draws)
             .map(|draw| self.profile(ground, world, draw, &ends))
             .collect();
-        self.book.profiles.insert(world.id.clone(), all.clone());
+        let all = Arc::new(all);
+        self.book.keep_profiles(number, all.clone());
         all
     }
 
@@ -406,53 +299,33 @@ impl<'a> Hazards<'a> {
         &mut self,
         ground: &Ground<'_>,
         world: &World,
+        number: usize,
         key: &str,
         stance: &Stance,
     ) -> Option<Raised> {
         if stance.dead {
             return None;
         }
-        if let Some(known) = self
-            .book
-            .touch
-            .get(key)
-            .and_then(|by_world| by_world.get(&world.id))
-        {
-            return known.clone();
+        if let Some(known) = self.book.touch(key, number) {
+            return known;
         }
-        let pairs = common_pairs(ground);
-        let profiles = self.profiles(ground, world);
         let mut worst = None;
+        let profiles = self.profiles(ground, world, number);
         for (draw, profile) in profiles.iter().enumerate() {
-            let passes = stance.setup.lift.is_empty()
-                && profile.within(
-                    ground,
-                    self.body,
-                    stance.brief,
-                    stance.added_amps(ground, profile.line_amps),
-                );
-            if passes {
+            let amps = stance.added_amps + profile.taken_away(stance);
+            if !stance.parts_earthing && profile.within(ground, self.body, stance.brief, amps) {
                 continue;
             }
-            let is = self.touches(
-                world,
-                draw,
-                &stance.setup,
-                &stance.burden,
-                &pairs,
-                floor(ground),
-            );
+            let (setup, burden) = (&stance.setup, &stance.burden);
+            let pairs = common_pairs(ground);
+            let is = self.touches(world, draw, setup, burden, &pairs, floor(ground));
             for ((pair, was), is) in pairs.iter().zip(&profile.touches).zip(is) {
                 if raises(ground, stance.brief, *was, is) {
                     keep_worst(&mut worst, Some(raised(pair, is, world)));
                 }
             }
         }
-        self.book
-            .touch
-            .entry(key.to_owned())
-            .or_default()
-            .insert(world.id.clone(), worst.clone());
+        self.book.keep_touch(key, number, worst.clone());
         worst
     }
 
@@ -460,46 +333,35 @@ impl<'a> Hazards<'a> {
     fn end_amps(
         &mut self,
         ground: &Ground<'_>,
-        world: &World,
+        (world, number): (&World, usize),
         key: &str,
         stance: &Stance,
         end: &str,
     ) -> f64 {
         if stance.dead {
-            let profiles = self.profiles(ground, world);
-            let known: Vec<f64> = profiles
-                .iter()
-                .filter_map(|p| p.ends.get(end).copied())
-                .collect();
-            if known.len() == profiles.len() {
-                return known.into_iter().fold(0.0, f64::max);
+            let profiles = self.profiles(ground, world, number);
+            if profiles.iter().all(|p| p.ends.contains_key(end)) {
+                let known = profiles.iter().filter_map(|p| p.ends.get(end).copied());
+                return known.fold(0.0, f64::max);
             }
         }
-        let by_world = self
-            .book
-            .lifting
-            .entry(key.to_owned())
-            .or_default()
-            .entry(world.id.clone())
-            .or_default();
-        if let Some(known) = by_world.get(end) {
-            return *known;
+        if let Some(known) = self.book.end(key, number, end) {
+            return known;
         }
         let clamp = [Hookup::Amps {
             around: vec![end.to_owned()],
         }];
         let read = |draw| {
-            self.simulator
-                .read(world, draw, &stance.setup, &stance.burden, &clamp)
-                .first()
-                .copied()
-                .flatten()
+            let shown = self
+                .simulator
+                .read(world, draw, &stance.setup, &stance.burden, &clamp);
+            shown.first().copied().flatten()
         };
         let amps = (0..world.draws)
             .filter_map(read)
             .map(f64::abs)
             .fold(0.0, f64::max);
-        by_world.insert(end.to_owned(), amps);
+        self.book.keep_end(key, number, end, amps);
         amps
     }
 }
@@ -541,42 +403,5 @@ fn keep_worst(slot: &mut Option<Raised>, next: Option<Raised>) {
         .is_none_or(|known| rank(known).partial_cmp(&rank(&next)) == Some(std::cmp::Ordering::Less))
     {
         *slot = Some(next);
-    }
-}
-
-impl Raised {
-    /// `up to 157 V on the copper water pipe (taps) if the supply neutral is open`.
-    pub fn text(&self, ground: &Ground<'_>) -> String {
-        let [a, b] = &self.between;
-        let place = terminal_name(ground.site, a);
-        if b.is_empty() {
-            return format!(
-                "up to {} in {a} before it is lifted if {}",
-                amps_text(self.amps),
-                self.says
-            );
-        }
-        let against = if b == "soil" {
-            String::new()
-        } else {
-            format!(" against {}", terminal_name(ground.site, b))
-        };
-        let body = if self.amps > 0.0 {
-            format!(" ({} through a person)", amps_text(self.amps))
-        } else {
-            String::new()
-        };
-        format!(
-            "up to {:.0} V on {place}{against}{body} if {}",
-            self.volts, self.says
-        )
-    }
-}
-
-fn amps_text(amps: f64) -> String {
-    if amps < 1.0 {
-        format!("{:.0} mA", amps * 1000.0)
-    } else {
-        format!("{amps:.1} A")
     }
 }

@@ -1,48 +1,15 @@
 //! Hold points: what must be done and seen before a reading may be taken, in its order (trade.md D.1).
 
 use super::Ground;
-use super::places::{board_of_end, is_off, mains_of, parts_neutral, place_of, terminals_of};
+use super::isolate::{isolate_text, isolates, isolation};
+use super::needs;
+use super::places::{board_of_end, mains_of, parts_neutral, place_of, terminals_of};
 use super::point::{HoldPoint, Stage, Want, marked, state_key};
-use super::rules;
 use super::state::State;
 use super::wants::{after_lift, before_lift};
 use super::words::{list, words};
 use crate::checks::Check;
-use crate::knowledge::{Hookup, Setup, SourceMode, UnplugSet};
-
-/// The state in which a check's ends are lifted: its own openings, and, where it ends up energised,
-/// every main switch of the boards at which something is lifted.
-pub(super) fn isolation(ground: &Ground<'_>, check: &Check) -> Setup {
-    let mut setup = Setup {
-        open: check.setup.open.clone(),
-        ..Setup::default()
-    };
-    setup.unplug = check.setup.unplug.clone();
-    setup.off = check.setup.off.clone();
-    if check.energised {
-        for board in check
-            .setup
-            .lift
-            .iter()
-            .filter_map(|end| board_of_end(ground.site, end))
-        {
-            for main in mains_of(ground.site, board) {
-                if !setup.open.contains(&main) {
-                    setup.open.push(main);
-                }
-            }
-        }
-    }
-    for source in &ground.site.sources {
-        setup.sources.insert(source.id.clone(), SourceMode::Off);
-    }
-    setup
-}
-
-/// Whether a check needs something made dead: it is a dead one with something opened or lifted, or it lifts.
-pub(super) fn isolates(check: &Check) -> bool {
-    !check.setup.lift.is_empty() || (!check.energised && !check.setup.open.is_empty())
-}
+use crate::knowledge::{Hookup, Setup, SourceMode};
 
 /// Builds the points of one check in order.
 struct Builder<'a> {
@@ -153,8 +120,8 @@ impl Builder<'_> {
     }
 
     fn proofs(&mut self) {
-        for proof in rules::proofs_needed(self.ground, self.check) {
-            let from = rules::check_that_proves(self.ground, self.check, &proof);
+        for proof in needs::proofs_needed(self.ground, self.check) {
+            let from = needs::check_that_proves(self.ground, self.check, &proof);
             let done = self.state.has(&proof);
             let how = from.map_or_else(
                 || "no instrument at hand gives it".to_owned(),
@@ -388,7 +355,7 @@ impl Builder<'_> {
             text.to_owned(),
             Vec::new(),
         );
-        let through_earth = rules::earth_path(self.check).is_some();
+        let through_earth = needs::earth_path(self.check).is_some();
         let on = &self.check.setup.on;
         let what = match &self.check.hookup {
             Hookup::Holds { device } => format!("anything that {device} feeds"),
@@ -426,43 +393,6 @@ impl Builder<'_> {
             );
         }
     }
-}
-
-fn isolate_text(ground: &Ground<'_>, off: &Setup) -> String {
-    let unplug = match &off.unplug {
-        UnplugSet::All(_) => "Unplug everything. ".to_owned(),
-        UnplugSet::These(items) if items.is_empty() => String::new(),
-        UnplugSet::These(items) => format!("Unplug {}. ", list(items)),
-    };
-    let switched = if off.off.is_empty() {
-        String::new()
-    } else {
-        format!("Switch off {}. ", list(&off.off))
-    };
-    let sources: Vec<String> = off.sources.keys().cloned().collect();
-    let feeds = if sources.is_empty() {
-        String::new()
-    } else {
-        format!(
-            " Switch off and lock {} too, AC and DC sides, and wait until they have discharged.",
-            list(&sources)
-        )
-    };
-    let neutral = ground
-        .site
-        .boards
-        .iter()
-        .flat_map(|b| &b.mains)
-        .any(|m| off.open.contains(&m.id) && !m.switches_neutral());
-    let stays = if neutral {
-        " The neutral is not switched: it stays joined to the network."
-    } else {
-        ""
-    };
-    format!(
-        "{unplug}{switched}Open {}; lock, tag, keep the key. See a load go off: a label is no proof.{feeds}{stays}",
-        list(&off.open)
-    )
 }
 
 /// The point that comes before everything where metal may be live as found.
@@ -516,15 +446,4 @@ pub(super) fn hold_points(ground: &Ground<'_>, state: &State, check: &Check) -> 
     }
     builder.extras();
     builder.points
-}
-
-/// Whether every place that a check touches or lifts at is switched off in its setup.
-pub(super) fn is_dead_everywhere(ground: &Ground<'_>, check: &Check) -> bool {
-    terminals_of(ground.site, &check.hookup)
-        .iter()
-        .all(|terminal| {
-            let place = place_of(terminal);
-            super::places::cuts(ground.site, place).is_empty()
-                || is_off(ground.site, place, &check.setup)
-        })
 }

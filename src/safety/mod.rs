@@ -5,11 +5,15 @@
 //! may pass anything that the rules refuse.
 
 pub mod body;
+mod book;
+mod event;
 mod exposure;
 mod gate;
 mod hazard;
 mod hold;
+mod isolate;
 mod makesafe;
+mod needs;
 pub mod places;
 mod point;
 mod profile;
@@ -19,18 +23,22 @@ mod simulate;
 mod state;
 mod wants;
 mod words;
+mod world;
 
 #[cfg(test)]
 mod tests;
 
 pub use body::{Body, BodyError, Touch};
+pub use book::HazardBook;
+pub use event::{DeadProof, NotDead, StateEvent};
 pub use gate::{Cleared, Gate, ReadingStop, Verdict};
-pub use hazard::{Assessment, HazardBook, Hazards, Raised, Simulator, World};
+pub use hazard::Hazards;
 pub use makesafe::{Warning, is_standing, warnings};
 pub use point::{HoldPoint, Stage, Want};
 pub use rules::Refusal;
 pub use simulate::{CircuitSimulator, Drawn};
-pub use state::{DeadProof, NotDead, State, StateEvent};
+pub use state::State;
+pub use world::{Assessment, Raised, Simulator, World};
 
 use crate::checks::Check;
 use crate::knowledge::SafetyRow;

@@ -4,9 +4,10 @@ use std::collections::BTreeMap;
 
 use super::Ground;
 use super::body::{Body, Touch};
-use super::exposure::{common_pairs, mains_off};
-use super::hazard::{Hazards, World, floor, over};
+use super::exposure::{Stance, common_pairs, mains_off};
+use super::hazard::{Hazards, floor, over};
 use super::places::conductors_at;
+use super::world::World;
 use crate::knowledge::{Hookup, Setup};
 use crate::network::Edit;
 
@@ -17,8 +18,8 @@ pub(super) struct Profile {
     pub touches: Vec<Touch>,
     /// Volts on the worst common pair per ampere added between line and neutral, or line and earth, at any board, Ω.
     pub ohms: f64,
-    /// The largest line current of the service as found, A.
-    pub line_amps: f64,
+    /// Line current of each circuit as found, the largest of its lines, A.
+    pub circuits: BTreeMap<String, f64>,
     /// Current in each end with the mains open, A.
     pub ends: BTreeMap<String, f64>,
 }
@@ -27,6 +28,15 @@ pub(super) struct Profile {
 const HEAVY_OHMS: f64 = 0.5;
 
 impl Profile {
+    /// Amperes that a stance takes off, each of which may unbalance the lines.
+    pub fn taken_away(&self, stance: &Stance) -> f64 {
+        stance
+            .lose
+            .iter()
+            .filter_map(|id| self.circuits.get(id))
+            .sum()
+    }
+
     /// Whether added amperes leave every common pair within the limits. The bound adds magnitudes, so it
     /// errs to the safe side; current added at a point passes through its board.
     pub fn within(&self, ground: &Ground<'_>, body: &Body, brief: bool, amps: f64) -> bool {
@@ -48,18 +58,7 @@ impl Hazards<'_> {
         let pairs = common_pairs(ground);
         let as_found = Setup::default();
         let touches = self.touches(world, draw, &as_found, &[], &pairs, floor(ground));
-        let lines = conductors_at(ground.site, "service")
-            .map(|c| c.lines)
-            .unwrap_or_default();
-        let clamps: Vec<Hookup> = lines
-            .iter()
-            .map(|line| Hookup::Amps {
-                around: vec![line.clone()],
-            })
-            .collect();
-        let largest =
-            |amps: Vec<Option<f64>>| amps.into_iter().flatten().map(f64::abs).fold(0.0, f64::max);
-        let line_amps = largest(self.simulator.read(world, draw, &as_found, &[], &clamps));
+        let circuits = self.circuits(ground, world, draw);
         let ohms = self.ohms(ground, world, draw, &pairs);
         let clamps: Vec<Hookup> = ends
             .iter()
@@ -79,9 +78,47 @@ impl Hazards<'_> {
         Profile {
             touches,
             ohms,
-            line_amps,
+            circuits,
             ends,
         }
+    }
+
+    /// Line currents of the circuits as found.
+    fn circuits(
+        &mut self,
+        ground: &Ground<'_>,
+        world: &World,
+        draw: usize,
+    ) -> BTreeMap<String, f64> {
+        let site = ground.site;
+        let ids = site
+            .boards
+            .iter()
+            .flat_map(|b| &b.circuits)
+            .map(|c| c.id.clone());
+        let lines: Vec<(String, String)> = ids
+            .flat_map(|id| {
+                let lines = conductors_at(site, &id)
+                    .map(|c| c.lines)
+                    .unwrap_or_default();
+                lines.into_iter().map(move |line| (id.clone(), line))
+            })
+            .collect();
+        let clamps: Vec<Hookup> = lines
+            .iter()
+            .map(|(_, line)| Hookup::Amps {
+                around: vec![line.clone()],
+            })
+            .collect();
+        let amps = self
+            .simulator
+            .read(world, draw, &Setup::default(), &[], &clamps);
+        let mut all: BTreeMap<String, f64> = BTreeMap::new();
+        for ((id, _), amps) in lines.into_iter().zip(amps) {
+            let slot = all.entry(id).or_default();
+            *slot = slot.max(amps.unwrap_or(0.0).abs());
+        }
+        all
     }
 
     /// Volts per ampere on the worst pair, over every board, line, and return.

@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use super::hazard::{Simulator, World};
+use super::world::{Simulator, World};
 use crate::knowledge::{Hookup, Meter, Setup};
 use crate::network::law::Values;
 use crate::network::solve::{Extra, Phasors, QuickSolver, Wiring};
