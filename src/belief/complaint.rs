@@ -1,7 +1,7 @@
 //! The complaint as evidence: what the person would have noticed under each hypothesis.
 //!
-//! P(complaint | h) = P(this kind of call | fault kind) · (s + (1 − s) · floor), where s is the share of
-//! draws under which a sign of the complaint shows in the solved circuit at the place told.
+//! P(complaint | h) = P(this kind of call | fault kind) · place · time · (s + (1 − s) · floor), where s is
+//! the share of draws under which a sign of the complaint shows in the solved circuit at the place told.
 
 use super::cloud::{Draws, aim, shown};
 use super::model::Model;
@@ -9,7 +9,7 @@ use super::nearness::{Near, near};
 use super::world::World;
 use crate::checks::sign_at;
 use crate::faults::Hypothesis;
-use crate::knowledge::{Hookup, Setup, Sign, SymptomRow};
+use crate::knowledge::{FaultKind, Hookup, Setup, Sign, SymptomRow, words};
 use crate::network::{Outcome, QuickSolver, Values};
 use crate::numeric::special::{ln, normal_quantile};
 use crate::quantity::Word;
@@ -30,7 +30,7 @@ pub struct Complaint {
 }
 
 /// Least probability of a complaint under any cause: people call for reasons of their own.
-const LEAST: f64 = 0.004;
+const LEAST: f64 = 0.0003;
 
 /// The signs of a complaint that fit its place, filled.
 fn signs(model: &Model, row: &SymptomRow, complaint: &Complaint) -> Vec<(Sign, Setup, Hookup)> {
@@ -86,7 +86,7 @@ pub fn log_probability(
         return 0.0;
     };
     let table = match hypothesis {
-        None => row.nothing_wrong,
+        None => row.nothing_wrong * anywhere(row, complaint),
         // Of two causes, either may be the one complained of.
         Some(h) => {
             1.0 - h
@@ -94,9 +94,10 @@ pub fn log_probability(
                 .iter()
                 .zip(&h.faults)
                 .filter_map(|(&k, fault)| Some((model.knowledge.faults.get(k)?, fault)))
-                .map(|(k, fault)| {
-                    let p = k.complaints.get(&complaint.kind).copied().unwrap_or(0.0);
-                    1.0 - p * place_factor(model, row, complaint, &fault.at)
+                .map(|(kind, fault)| {
+                    let p = kind.complaints.get(&complaint.kind).copied().unwrap_or(0.0);
+                    let place = place_factor(model, row, complaint, kind, &fault.at);
+                    1.0 - p * place * when_factor(kind, complaint)
                 })
                 .product::<f64>()
         }
@@ -112,15 +113,53 @@ pub fn log_probability(
     ln((table * factor).max(LEAST))
 }
 
-/// How much less likely a complaint that points at its own cause is where the fault is elsewhere.
-fn place_factor(model: &Model, row: &SymptomRow, complaint: &Complaint, fault: &str) -> f64 {
+/// Log probability of a complaint under an unlisted cause.
+pub fn unlisted(model: &Model, complaint: &Complaint) -> f64 {
+    let place = match model.knowledge.symptom(&complaint.kind) {
+        Some(row) => anywhere(row, complaint),
+        None => 1.0,
+    };
+    ln((model.knowledge.beside.unlisted_complaint * place).max(1e-9))
+}
+
+/// Factor of the place told where the cause may be anywhere.
+fn anywhere(row: &SymptomRow, complaint: &Complaint) -> f64 {
     match (row.elsewhere, &complaint.at) {
-        (Some(elsewhere), Some(told)) => match near(&model.site, fault, told) {
-            Near::Here => 1.0,
-            Near::Around => elsewhere.sqrt(),
-            Near::Away => elsewhere,
-        },
+        (Some(elsewhere), Some(_)) => elsewhere.sqrt(),
         _ => 1.0,
+    }
+}
+
+/// How much less likely the place told is where the fault is elsewhere.
+fn place_factor(
+    model: &Model,
+    row: &SymptomRow,
+    complaint: &Complaint,
+    kind: &FaultKind,
+    fault: &str,
+) -> f64 {
+    let Some(told) = &complaint.at else {
+        return 1.0;
+    };
+    let away = row.elsewhere.unwrap_or(1.0);
+    let away = if kind.edits.is_empty() {
+        away.min(row.floor)
+    } else {
+        away
+    };
+    match near(&model.site, fault, told) {
+        Near::Here => 1.0,
+        Near::Around => away.sqrt(),
+        Near::Away => away,
+    }
+}
+
+/// How much likelier than an even share the time told is under a kind.
+fn when_factor(kind: &FaultKind, complaint: &Complaint) -> f64 {
+    let even = 1.0 / words::WHEN.len() as f64;
+    match &complaint.when {
+        Some(when) => kind.when.get(when).copied().unwrap_or(even) / even,
+        None => 1.0,
     }
 }
 

@@ -5,7 +5,7 @@ use std::sync::Arc;
 use rayon::prelude::*;
 
 use super::cloud::{Cloud, Draws, likelihoods};
-use super::complaint::{Complaint, log_probability};
+use super::complaint::{Complaint, log_probability, unlisted as unlisted_complaint};
 use super::fit::refit;
 use super::model::Model;
 use super::odds::posterior;
@@ -704,7 +704,7 @@ impl Candidate {
             .map(|complaint| match self.cause {
                 // What was complained of is explained by what was repaired.
                 _ if after_repair => 0.0,
-                Cause::Unlisted => ln(model.knowledge.beside.unlisted_complaint.max(1e-9)),
+                Cause::Unlisted => unlisted_complaint(model, complaint),
                 _ => log_probability(
                     model,
                     &mut self.worlds[0],

@@ -19,7 +19,8 @@ mod tests {
             "equipment" if only("class-II") => 4.0,
             "equipment" => 10.0,
             "rcd" => 2.0,
-            "source" => 0.2,
+            "source" if only("backup") => 0.3,
+            "source" => 0.5,
             _ => 1.0,
         };
         kind.at.iter().map(of).sum()

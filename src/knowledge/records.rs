@@ -291,6 +291,10 @@ pub struct FaultKind {
     pub source: String,
     /// P(the person complains of this | this fault, and there was a call).
     pub complaints: BTreeMap<String, f64>,
+    /// P(the complaint comes when | this fault is its cause), by the words of [`crate::knowledge::words::WHEN`];
+    /// a word that is left out has the even share, one in seven.
+    #[serde(default)]
+    pub when: BTreeMap<String, f64>,
     /// A latent defect may stand beside any other cause.
     #[serde(default)]
     pub latent: bool,
@@ -514,8 +518,10 @@ pub struct SymptomRow {
     pub signs: Vec<Sign>,
     /// Factor where no sign shows.
     pub floor: f64,
-    /// Factor where the fault sits at quite another place than the one told (its square root where both
-    /// share a circuit or board): for complaints that point at their own cause. Absent: none.
+    /// Factor where the fault sits at quite another place than the one told; its square root where both
+    /// share a circuit or board, and for nothing wrong and an unlisted cause, which may be anywhere.
+    /// A kind without edits shows no sign: elsewhere its factor is `floor`, if that is less.
+    /// Absent: 1.
     #[serde(default)]
     pub elsewhere: Option<f64>,
     /// P(complaint of this kind | nothing wrong now, and there was a call).

@@ -41,6 +41,15 @@ pub fn fault(row: &Row<'_>, out: &mut Issues) {
         let what = format!("the complaints sum to {sum:.3}");
         out.push(row.issue("complaints", what, "lower them to 1 at most"));
     }
+    for (when, p) in &f.when {
+        word(row, &format!("when.{when}"), when, words::WHEN, out);
+        within(row, &format!("when.{when}"), *p, 0.0, 1.0, out);
+    }
+    let sum: f64 = f.when.values().sum();
+    if sum > 1.001 {
+        let what = format!("the shares of `when` sum to {sum:.3}");
+        out.push(row.issue("when", what, "lower them to 1 at most"));
+    }
     if let Some(manner) = &f.manner {
         within(row, "manner.shows", manner.shows, 0.0, 1.0, out);
         for (provoke, p) in &manner.provoked {
