@@ -45,8 +45,13 @@ fn reading(check: &Check, value: &str, confirm: bool) -> command::Reading {
 
 /// A check whose first reading is stopped by hold points that are done by hand.
 fn held(session: &mut Session) -> (Check, SessionError) {
+    held_of(session, |_| true)
+}
+
+fn held_of(session: &mut Session, fits: impl Fn(&Check) -> bool) -> (Check, SessionError) {
     for check in session.engine().checks().to_vec() {
-        if let Err(error) = session.reading(&reading(&check, value_for(&check), true))
+        if fits(&check)
+            && let Err(error) = session.reading(&reading(&check, value_for(&check), true))
             && error.code == ErrorCode::HoldPointOpen
             && error.extra["points"]
                 .as_array()
@@ -251,5 +256,84 @@ fn a_replay_stands_where_the_visit_stood() {
     assert_eq!(
         serde_json::to_string(&again.ranking(&all)).unwrap(),
         serde_json::to_string(&session.ranking(&all)).unwrap()
+    );
+}
+
+#[test]
+fn all_odds_and_the_three_beside_them_sum_to_one() {
+    let mut session = opened();
+    let (check, _) = held(&mut session);
+    take(&mut session, &check, value_for(&check));
+    let odds = session
+        .ranking(&command::Ranking {
+            count: Some(1_000_000),
+        })
+        .odds;
+    let listed: f64 = odds.ranking.iter().map(|row| row.p).sum();
+    let all = listed + odds.nothing_wrong + odds.unlisted + odds.not_examined;
+    assert!((all - 1.0).abs() < 1e-9, "{all}");
+    let grouped: f64 = odds.groups.iter().map(|row| row.p).sum();
+    assert!((grouped - listed).abs() < 1e-9, "{grouped} {listed}");
+}
+
+#[test]
+fn a_reading_that_nothing_explains_is_asked_about_once() {
+    let mut session = opened();
+    let (check, _) = held_of(&mut session, |check| check.hookup.quantity() == "volts");
+    take_points(&mut session, &check);
+    let lines = session.records().len();
+    let error = session
+        .reading(&reading(&check, "900 V", false))
+        .unwrap_err();
+    assert_eq!(error.code, ErrorCode::NotCredible, "{error:?}");
+    assert_eq!(
+        session.records().len(),
+        lines,
+        "a reading held back is not recorded"
+    );
+    session.reading(&reading(&check, "900 V", true)).unwrap();
+}
+
+/// Does every point of a check, and reads nothing.
+fn take_points(session: &mut Session, check: &Check) {
+    for _ in 0..40 {
+        match session.reading(&reading(check, "900 V", false)) {
+            Err(error) if error.code == ErrorCode::HoldPointOpen => {
+                let points = error.extra["points"].as_array().unwrap().clone();
+                session.hold_point(&done(&points[0], "0.1 V")).unwrap();
+            }
+            _ => return,
+        }
+    }
+}
+
+#[test]
+fn what_if_and_evidence_record_nothing() {
+    let mut session = opened();
+    let (check, _) = held(&mut session);
+    let entry = take(&mut session, &check, value_for(&check));
+    let before = session.ranking(&command::Ranking { count: Some(50) });
+    let lines = session.records().len();
+    let value = value_for(&check).to_owned();
+    session
+        .whatif(&command::WhatIf {
+            test: check.test.clone(),
+            at: check.at.clone(),
+            value,
+        })
+        .unwrap();
+    let hypothesis = before.odds.ranking[0].hypothesis.clone();
+    let said = session
+        .evidence(&command::Evidence { hypothesis })
+        .unwrap()
+        .evidence;
+    assert_eq!(
+        said.iter().map(|row| row.entry).collect::<Vec<_>>(),
+        [entry]
+    );
+    assert_eq!(session.records().len(), lines);
+    assert_eq!(
+        session.ranking(&command::Ranking { count: Some(50) }),
+        before
     );
 }
