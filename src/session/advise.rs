@@ -3,7 +3,6 @@
 use super::Session;
 use super::clock::Deadline;
 use super::command;
-use super::engine::Engine;
 use super::error::SessionError;
 use super::event::{Advised, Event, TestAt};
 use super::view::{AdviceView, AdviseAnswer};
@@ -61,13 +60,5 @@ impl Session {
             verdict,
             why,
         })
-    }
-
-    /// Whether a test was among those last advised.
-    pub fn is_in_hand(&self, test: &str, at: &str) -> bool {
-        self.visit
-            .engine
-            .check(test, at)
-            .is_ok_and(|check| self.shown.contains(&Engine::key(check)))
     }
 }

@@ -17,7 +17,7 @@ use crate::safety::Hazards;
 #[derive(Clone, Debug)]
 enum Told {
     Complaint(Complaint),
-    Reading(Reading),
+    Reading(Box<Reading>),
     Repair {
         singles: Vec<usize>,
         found: bool,
@@ -52,7 +52,7 @@ impl Mind {
         })
     }
 
-    /// The belief itself, for faces that show where currents go.
+    /// The belief itself.
     pub fn belief(&self) -> &Belief {
         &self.belief
     }
@@ -88,7 +88,10 @@ impl Mind {
 
     /// A reading, in the setup of the check as taken.
     pub fn observe(&mut self, entry: u64, check: &Check, parsed: &Parsed) {
-        self.tell(entry, Told::Reading(as_reading(entry, check, parsed)));
+        self.tell(
+            entry,
+            Told::Reading(Box::new(as_reading(entry, check, parsed))),
+        );
     }
 
     /// A repair, or a place looked at in vain.
@@ -207,7 +210,7 @@ fn as_reading(entry: u64, check: &Check, parsed: &Parsed) -> Reading {
 fn take(belief: &mut Belief, entry: u64, told: &Told) {
     match told {
         Told::Complaint(complaint) => belief.complain(complaint.clone()),
-        Told::Reading(reading) => belief.observe(reading.clone()),
+        Told::Reading(reading) => belief.observe((**reading).clone()),
         Told::Repair {
             singles,
             found,

@@ -44,6 +44,7 @@ use event::{Opened, TestAt};
 pub use log::Log;
 pub use vocabulary::vocabulary;
 
+use crate::belief::Belief;
 use crate::checks::Check;
 use crate::safety::State;
 use visit::Visit;
@@ -69,6 +70,11 @@ impl Session {
     /// Every event so far.
     pub fn records(&self) -> &[Record] {
         &self.records
+    }
+
+    /// The belief as it stands: hypotheses with their circuits, for showing where currents go.
+    pub fn belief(&self) -> &Belief {
+        self.visit.mind.belief()
     }
 
     /// What is open, lifted and proved.
