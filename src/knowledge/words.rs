@@ -112,7 +112,7 @@ pub const ONLY: &[Meaning] = &[
         "an earth conductor runs to the place with its feed (all but a submain with `pe_mm2` null)",
     ),
     (
-        "switched-neutral",
+        "mains-open-neutral",
         "every main switch of the place's board opens the neutral",
     ),
     (

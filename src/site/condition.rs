@@ -39,7 +39,7 @@ pub fn holds(word: &str, place: &Place, site: &Site, equipment: &[EquipmentRow])
             Feed::Submain { cable, .. } => cable.pe_mm2.is_some(),
             Feed::Service => true,
         }),
-        "switched-neutral" => {
+        "mains-open-neutral" => {
             board(|b| !b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral()))
         }
         "solid-neutral" => {
