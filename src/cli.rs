@@ -6,9 +6,14 @@ use clap::{Args, Parser, Subcommand};
 
 /// Leads an electrician, test by safe test, from a complaint to a proved cause.
 #[derive(Debug, Parser)]
-#[command(version, about, max_term_width = 100, after_help = "Exit codes: 0 done, 64 the command line is wrong, 65 a file \
+#[command(
+    version,
+    about,
+    max_term_width = 100,
+    after_help = "Exit codes: 0 done, 64 the command line is wrong, 65 a file \
     holds what cannot be used, 69 the visit refused, 70 a fault of this program, 74 a file or the terminal cannot be used. \
-    A closed pipe is no failure. NO_COLOR, set and not empty, turns colour off; COLUMNS gives the width where no terminal does.")]
+    A closed pipe is no failure. NO_COLOR, set and not empty, turns colour off; COLUMNS gives the width where no terminal does."
+)]
 pub struct Cli {
     /// What to do.
     #[command(subcommand)]
@@ -23,8 +28,10 @@ pub enum Command {
     /// Serve another program: one JSON object a line in, one line out.
     Pipe(Pipe),
     /// Tell the story of a saved log, and whether it is whole.
-    #[command(after_help = "Exit codes: 0 whole and clean, 1 whole with remarks (something skipped, refused, retracted, owed, or \
-        left open), 2 not whole (a line was changed, cut or is missing).")]
+    #[command(
+        after_help = "Exit codes: 0 whole and clean, 1 whole with remarks (something skipped, refused, retracted, owed, or \
+        left open), 2 not whole (a line was changed, cut or is missing)."
+    )]
     Audit(Audit),
     /// Watch a visit with an invented fault.
     Demo(Demo),
@@ -40,13 +47,23 @@ pub enum Command {
 #[derive(Debug, Args)]
 pub struct Attend {
     /// Site file, or one of the invented sites: house, farm, shop.
-    #[arg(long, value_name = "FILE", default_value = "demo", conflicts_with = "resume")]
+    #[arg(
+        long,
+        value_name = "FILE",
+        default_value = "demo",
+        conflicts_with = "resume"
+    )]
     pub site: String,
     /// Keep the visit in this file; it must be new.
     #[arg(long, value_name = "FILE", conflicts_with = "resume")]
     pub log: Option<PathBuf>,
     /// Instruments in the van, with commas between; `knowledge list` names them.
-    #[arg(long, value_name = "A,B,C", value_delimiter = ',', conflicts_with = "resume")]
+    #[arg(
+        long,
+        value_name = "A,B,C",
+        value_delimiter = ',',
+        conflicts_with = "resume"
+    )]
     pub kit: Option<Vec<String>>,
     /// Seed of the random streams: the same seed and readings give the same odds.
     #[arg(long, value_name = "N", conflicts_with = "resume")]

@@ -60,7 +60,11 @@ pub fn page(trouble: &Trouble) -> Page {
     let mut page = Page::new();
     let said = trouble.to_string();
     for (at, line) in said.lines().enumerate() {
-        let lead = if at == 0 { Text::new().with(Meaning::Wrong, "straypath:") } else { Text::new() };
+        let lead = if at == 0 {
+            Text::new().with(Meaning::Wrong, "straypath:")
+        } else {
+            Text::new()
+        };
         page.hang(lead, 11, line);
     }
     let mut cause = trouble.source();
@@ -88,9 +92,15 @@ mod tests {
 
     #[test]
     fn each_kind_has_its_code_and_its_cure() {
-        let usage = Trouble::Usage { message: "no kit `x`".into(), hint: "name one".into() };
+        let usage = Trouble::Usage {
+            message: "no kit `x`".into(),
+            hint: "name one".into(),
+        };
         assert_eq!(Kind::of(&usage), Kind::Usage);
-        assert_eq!(lines(&usage, 60, Style::plain()), "straypath: no kit `x`\n  do this: name one\n");
+        assert_eq!(
+            lines(&usage, 60, Style::plain()),
+            "straypath: no kit `x`\n  do this: name one\n"
+        );
         let closed = Trouble::Terminal(std::io::ErrorKind::BrokenPipe.into());
         assert_eq!(Kind::of(&closed), Kind::ClosedPipe);
     }

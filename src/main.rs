@@ -14,9 +14,10 @@ use clap::error::ErrorKind;
 
 use cli::{Cli, Command, KnowledgeCommand, SiteCommand};
 use failure::Kind;
+use straypath::faces::demo::DemoArgs;
 use straypath::faces::prompt::{self, Options};
 use straypath::faces::text::{Paper, Style, columns};
-use straypath::faces::{Trouble, pipe, sites};
+use straypath::faces::{Trouble, audit, demo, pipe, sites};
 use straypath::knowledge::Knowledge;
 
 /// What the surroundings say, asked once.
@@ -90,21 +91,45 @@ fn carry_out(command: Command, around: &Surroundings) -> Result<ExitCode, Troubl
             let knowledge = knowledge(ask.knowledge.as_deref())?;
             pipe::run(knowledge, ask.log, io::stdin().lock(), io::stdout().lock())?;
         }
-        Command::Audit(_) | Command::Demo(_) => {}
+        Command::Audit(ask) => {
+            let knowledge = knowledge(ask.knowledge.as_deref())?;
+            let finding = audit::run(&knowledge, &ask.log, &mut around.paper())?;
+            return Ok(ExitCode::from(finding.code()));
+        }
+        Command::Demo(ask) => {
+            let args = DemoArgs {
+                seed: ask.seed,
+                site: ask.site,
+                fault: ask.fault,
+                quick: ask.quick,
+                all: ask.all,
+            };
+            demo::run(knowledge(None)?, &args, &mut around.paper())?;
+        }
         Command::Site(SiteCommand::Check { file }) => {
             sites::check(Knowledge::embedded()?, &file, &mut around.paper())?;
         }
         Command::Site(SiteCommand::New { out }) => {
             let echo = !io::stdin().is_terminal();
             let mut input = io::stdin().lock();
-            sites::new(&Knowledge::embedded()?, out.as_deref(), &mut input, echo, &mut around.paper())?;
+            sites::new(
+                &Knowledge::embedded()?,
+                out.as_deref(),
+                &mut input,
+                echo,
+                &mut around.paper(),
+            )?;
         }
         Command::Knowledge(KnowledgeCommand::List { knowledge: folder }) => {
             sites::list(&*knowledge(folder.as_deref())?, &mut around.paper())?;
         }
         Command::Knowledge(KnowledgeCommand::Check { knowledge: folder }) => {
             let sound = sites::check_knowledge(folder.as_deref(), &mut around.paper())?;
-            return Ok(if sound { ExitCode::SUCCESS } else { Kind::Data.code() });
+            return Ok(if sound {
+                ExitCode::SUCCESS
+            } else {
+                Kind::Data.code()
+            });
         }
     }
     Ok(ExitCode::SUCCESS)

@@ -22,24 +22,36 @@ pub const USUAL: &str = "house";
 pub fn document(knowledge: &Knowledge, name: &str) -> Result<Value, Trouble> {
     let known = known(knowledge);
     let name = if name == "demo" { USUAL } else { name };
-    let wrong = |error| Trouble::Site { path: name.to_owned(), error };
+    let wrong = |error| Trouble::Site {
+        path: name.to_owned(),
+        error,
+    };
     if let Some(text) = embedded(name) {
         load_str(text, &known).map_err(wrong)?;
-        return serde_json::from_str(text)
-            .map_err(|error| Trouble::Usage { message: error.to_string(), hint: String::new() });
+        return serde_json::from_str(text).map_err(|error| Trouble::Usage {
+            message: error.to_string(),
+            hint: String::new(),
+        });
     }
     Ok(load_path(Path::new(name), &known).map_err(wrong)?.given)
 }
 
 fn known(knowledge: &Knowledge) -> Known {
-    Known::new(&knowledge.equipment, knowledge.rules.iter().map(|rule| rule.id.as_str()))
+    Known::new(
+        &knowledge.equipment,
+        knowledge.rules.iter().map(|rule| rule.id.as_str()),
+    )
 }
 
 /// `site check`: what a site file says, what it leaves open, and how much there is to test.
 ///
 /// # Errors
 /// What is wrong with the file; output that cannot be written.
-pub fn check(knowledge: Knowledge, name: &str, paper: &mut Paper<impl Write>) -> Result<(), Trouble> {
+pub fn check(
+    knowledge: Knowledge,
+    name: &str,
+    paper: &mut Paper<impl Write>,
+) -> Result<(), Trouble> {
     let given = document(&knowledge, name)?;
     let kit: Vec<String> = knowledge.kit.iter().map(|row| row.kind.clone()).collect();
     let engine = Engine::new(&knowledge, &given, &kit)?;
@@ -56,7 +68,11 @@ pub fn check(knowledge: Knowledge, name: &str, paper: &mut Paper<impl Write>) ->
             page.hang("  -", 4, warning.text.as_str());
         }
     }
-    page.blank().line(Text::new().with(Meaning::Done, "The file loads.").plain(" Walk the site and compare."));
+    page.blank().line(
+        Text::new()
+            .with(Meaning::Done, "The file loads.")
+            .plain(" Walk the site and compare."),
+    );
     Ok(paper.show(&page)?)
 }
 
@@ -97,7 +113,10 @@ pub fn new(
 ) -> Result<(), Trouble> {
     if let Some(path) = out.filter(|path| path.exists()) {
         return Err(Trouble::Usage {
-            message: format!("{} is there already, and is not overwritten", path.display()),
+            message: format!(
+                "{} is there already, and is not overwritten",
+                path.display()
+            ),
             hint: "name a new file with --out".to_owned(),
         });
     }
@@ -121,7 +140,10 @@ pub fn new(
         paper.raw(&format!("[{}] > ", question.default))?;
         let Some(line) = next_line(input)? else {
             return Err(Trouble::Usage {
-                message: format!("the answers end after {}; nothing was written", interview.answered()),
+                message: format!(
+                    "the answers end after {}; nothing was written",
+                    interview.answered()
+                ),
                 hint: "answer every question; Enter takes the default".to_owned(),
             });
         };
@@ -130,7 +152,11 @@ pub fn new(
         }
         if let Err(error) = interview.answer(&line) {
             let mut page = Page::new();
-            page.line(Text::new().with(Meaning::Wrong, error.message).plain(format!("; {}", error.hint)));
+            page.line(
+                Text::new()
+                    .with(Meaning::Wrong, error.message)
+                    .plain(format!("; {}", error.hint)),
+            );
             paper.show(&page)?;
         }
     }
@@ -139,8 +165,18 @@ pub fn new(
     let Some(path) = out else {
         return Ok(paper.raw(&text)?);
     };
-    let write = || OpenOptions::new().write(true).create_new(true).open(path)?.write_all(text.as_bytes());
-    write().map_err(|source: io::Error| Trouble::File { path: path.to_owned(), doing: "written", source })?;
+    let write = || {
+        OpenOptions::new()
+            .write(true)
+            .create_new(true)
+            .open(path)?
+            .write_all(text.as_bytes())
+    };
+    write().map_err(|source: io::Error| Trouble::File {
+        path: path.to_owned(),
+        doing: "written",
+        source,
+    })?;
     let mut page = Page::new();
     page.blank().line(
         Text::new()
@@ -177,23 +213,41 @@ pub fn list(knowledge: &Knowledge, paper: &mut Paper<impl Write>) -> Result<(), 
     page.line(Text::new().with(Meaning::Head, "FAULT KINDS"));
     let mut table = Table::new(1);
     for kind in &knowledge.faults {
-        table.row(vec![Text::new().word(kind.kind.clone()).into(), words(&kind.name).into()]);
+        table.row(vec![
+            Text::new().word(kind.kind.clone()).into(),
+            words(&kind.name).into(),
+        ]);
     }
-    page.table(2, table).blank().line(Text::new().with(Meaning::Head, "TESTS"));
+    page.table(2, table)
+        .blank()
+        .line(Text::new().with(Meaning::Head, "TESTS"));
     let mut table = Table::new(1);
     for check in &knowledge.checks {
-        table.row(vec![Text::new().word(check.id.clone()).into(), words(&check.name).into()]);
+        table.row(vec![
+            Text::new().word(check.id.clone()).into(),
+            words(&check.name).into(),
+        ]);
     }
-    page.table(2, table).blank().line(Text::new().with(Meaning::Head, "COMPLAINTS"));
+    page.table(2, table)
+        .blank()
+        .line(Text::new().with(Meaning::Head, "COMPLAINTS"));
     let mut table = Table::new(1);
     for row in &knowledge.symptoms {
-        table.row(vec![Text::new().word(row.kind.clone()).into(), Cell::from(row.name.clone())]);
+        table.row(vec![
+            Text::new().word(row.kind.clone()).into(),
+            Cell::from(row.name.clone()),
+        ]);
     }
-    page.table(2, table).blank().line(Text::new().with(Meaning::Head, "KIT"));
+    page.table(2, table)
+        .blank()
+        .line(Text::new().with(Meaning::Head, "KIT"));
     let kit: Vec<&str> = knowledge.kit.iter().map(|row| row.kind.as_str()).collect();
     page.hang("", 2, Text::new().word(kit.join(", ")));
-    page.blank().line(Text::new().with(Meaning::Head, "SITES")).hang("", 2, Text::new().word(embedded_names().join(", ")));
-    page.blank().line(Text::new().dim(format!("digest {}", knowledge.digest)));
+    page.blank()
+        .line(Text::new().with(Meaning::Head, "SITES"))
+        .hang("", 2, Text::new().word(embedded_names().join(", ")));
+    page.blank()
+        .line(Text::new().dim(format!("digest {}", knowledge.digest)));
     Ok(paper.show(&page)?)
 }
 
@@ -201,7 +255,10 @@ pub fn list(knowledge: &Knowledge, paper: &mut Paper<impl Write>) -> Result<(), 
 ///
 /// # Errors
 /// A folder that cannot be read; output.
-pub fn check_knowledge(folder: Option<&Path>, paper: &mut Paper<impl Write>) -> Result<bool, Trouble> {
+pub fn check_knowledge(
+    folder: Option<&Path>,
+    paper: &mut Paper<impl Write>,
+) -> Result<bool, Trouble> {
     let issues = Knowledge::check_files(folder)?;
     let mut page = Page::new();
     for issue in &issues {

@@ -35,8 +35,14 @@ pub fn minutes(minutes: f64) -> String {
 pub fn sentence(text: &str) -> String {
     let text = text.trim();
     let mut letters = text.chars();
-    let Some(first) = letters.next() else { return String::new() };
-    let stop = if text.ends_with(['.', '!', '?', ':']) { "" } else { "." };
+    let Some(first) = letters.next() else {
+        return String::new();
+    };
+    let stop = if text.ends_with(['.', '!', '?', ':']) {
+        ""
+    } else {
+        "."
+    };
     first.to_uppercase().chain(letters).collect::<String>() + stop
 }
 
@@ -78,7 +84,9 @@ impl Names<'_> {
     /// Faults, as a person says them.
     pub fn faults(self, faults: &[Fault]) -> String {
         describe(self.0.knowledge(), self.0.site(), faults).unwrap_or_else(|_| {
-            let each = faults.iter().map(|fault| format!("{} at {}", fault.kind, self.place(&fault.at)));
+            let each = faults
+                .iter()
+                .map(|fault| format!("{} at {}", fault.kind, self.place(&fault.at)));
             each.collect::<Vec<_>>().join(", and ")
         })
     }
@@ -90,12 +98,19 @@ impl Names<'_> {
 
     /// A test at a place.
     pub fn test(self, test: &str, at: &str) -> String {
-        self.0.check(test, at).map_or_else(|_| format!("{test} at {}", self.place(at)), |check| check.name.clone())
+        self.0.check(test, at).map_or_else(
+            |_| format!("{test} at {}", self.place(at)),
+            |check| check.name.clone(),
+        )
     }
 
     /// A complaint.
     pub fn symptom(self, kind: &str, at: Option<&str>) -> String {
-        let name = self.0.knowledge().symptom(kind).map_or(kind, |row| row.name.as_str());
+        let name = self
+            .0
+            .knowledge()
+            .symptom(kind)
+            .map_or(kind, |row| row.name.as_str());
         match at {
             Some(at) => format!("{name}, {}", self.place(at)),
             None => name.to_owned(),
@@ -112,7 +127,11 @@ impl Names<'_> {
             .groups
             .iter()
             .take(most)
-            .map(|row| Cause { key: row.group.clone(), name: named(&row.group, &row.repair), p: row.p })
+            .map(|row| Cause {
+                key: row.group.clone(),
+                name: named(&row.group, &row.repair),
+                p: row.p,
+            })
             .collect();
         let beside = [
             ("nothing-wrong", "nothing wrong", odds.nothing_wrong),
@@ -120,13 +139,19 @@ impl Names<'_> {
             ("not-examined", "not examined (at most)", odds.not_examined),
         ];
         let beside = beside.into_iter().filter(|(_, _, p)| *p >= 0.005);
-        all.extend(beside.map(|(key, name, p)| Cause { key: key.to_owned(), name: name.to_owned(), p }));
+        all.extend(beside.map(|(key, name, p)| Cause {
+            key: key.to_owned(),
+            name: name.to_owned(),
+            p,
+        }));
         all
     }
 
     /// The unit that a test is read in.
     pub fn unit(self, test: &str, at: &str) -> Unit {
-        self.0.check(test, at).map_or(Unit::None, |check| self.0.asked(&check.hookup, &check.unit).unit)
+        self.0.check(test, at).map_or(Unit::None, |check| {
+            self.0.asked(&check.hookup, &check.unit).unit
+        })
     }
 
     /// What an event says, in a line.
@@ -140,7 +165,11 @@ impl Names<'_> {
             },
             Event::HoldPoint(p) if p.done => format!("hold point {} done", p.point),
             Event::HoldPoint(p) => {
-                format!("hold point {} not done: {}", p.point, p.why.as_deref().unwrap_or("no reason"))
+                format!(
+                    "hold point {} not done: {}",
+                    p.point,
+                    p.why.as_deref().unwrap_or("no reason")
+                )
             }
             Event::Reading(r) => format!("{}: {}", self.test(&r.test, &r.at), reading(&r.parsed)),
             Event::Cannot(c) if c.undo == Some(true) => {
@@ -164,11 +193,22 @@ impl Names<'_> {
                 }
             }
             Event::Recheck(r) => {
-                format!("re-test, {}: {}, {}", self.test(&r.test, &r.at), reading(&r.parsed), result(&r.result))
+                format!(
+                    "re-test, {}: {}, {}",
+                    self.test(&r.test, &r.at),
+                    reading(&r.parsed),
+                    result(&r.result)
+                )
             }
             Event::Closed(c) => {
                 let word = serde_json::to_value(c.outcome).ok();
-                format!("closed: {}", word.as_ref().and_then(|w| w.as_str()).unwrap_or("closed").replace('-', " "))
+                format!(
+                    "closed: {}",
+                    word.as_ref()
+                        .and_then(|w| w.as_str())
+                        .unwrap_or("closed")
+                        .replace('-', " ")
+                )
             }
             Event::Resumed(_) => "resumed; proofs of dead void".to_owned(),
         }
@@ -211,11 +251,24 @@ pub fn about(expects: &ExpectView) -> &str {
 pub fn expected(expects: &ExpectView, unit: Unit) -> String {
     match expects {
         ExpectView::Number { p05, p50, p95, .. } => {
-            let (low, middle, high) = (format(*p05, unit), format(*p50, unit), format(*p95, unit));
-            if low == high { middle } else { span(&low, &high) }
+            let (low, middle, high) = (
+                rounded(*p05, unit),
+                rounded(*p50, unit),
+                rounded(*p95, unit),
+            );
+            if low == high {
+                middle
+            } else {
+                span(&low, &high)
+            }
         }
         ExpectView::Words { outcomes, .. } => words_of(outcomes),
     }
+}
+
+/// A forecast is not known to more than two figures.
+fn rounded(value: f64, unit: Unit) -> String {
+    format(format!("{value:.1e}").parse().unwrap_or(value), unit)
 }
 
 /// `0 to 2 V` where both ends have one unit.
@@ -227,12 +280,19 @@ fn span(low: &str, high: &str) -> String {
 }
 
 fn words_of(outcomes: &BTreeMap<String, f64>) -> String {
-    let mut likely: Vec<(&String, f64)> =
-        outcomes.iter().map(|(word, p)| (word, *p)).filter(|(_, p)| *p >= 0.05).collect();
+    let mut likely: Vec<(&String, f64)> = outcomes
+        .iter()
+        .map(|(word, p)| (word, *p))
+        .filter(|(_, p)| *p >= 0.05)
+        .collect();
     likely.sort_by(|a, b| b.1.total_cmp(&a.1));
     match likely.as_slice() {
         [(word, _)] => (*word).clone(),
-        more => more.iter().map(|(word, p)| format!("{word} ({})", in_100(*p))).collect::<Vec<_>>().join(", "),
+        more => more
+            .iter()
+            .map(|(word, p)| format!("{word} ({})", in_100(*p)))
+            .collect::<Vec<_>>()
+            .join(", "),
     }
 }
 
@@ -240,12 +300,22 @@ fn words_of(outcomes: &BTreeMap<String, f64>) -> String {
 pub fn looks_like_reading(line: &str) -> bool {
     let number = line.trim_start_matches(['<', '>', '~', '=', ' ', '-', '+']);
     let words = [
-        Word::Holds, Word::Trips, Word::NoTrip, Word::Yes, Word::No, Word::Dims, Word::Brightens, Word::None,
-        Word::Open, Word::Unknown,
+        Word::Holds,
+        Word::Trips,
+        Word::NoTrip,
+        Word::Yes,
+        Word::No,
+        Word::Dims,
+        Word::Brightens,
+        Word::None,
+        Word::Open,
+        Word::Unknown,
     ];
     number.starts_with(|c: char| c.is_ascii_digit() || c == '.')
         || line.eq_ignore_ascii_case("ol")
-        || words.iter().any(|word| line.eq_ignore_ascii_case(word.text()))
+        || words
+            .iter()
+            .any(|word| line.eq_ignore_ascii_case(word.text()))
 }
 
 #[cfg(test)]
@@ -254,18 +324,23 @@ mod tests {
 
     #[test]
     fn odds_as_people_say_them() {
-        assert_eq!([0.001, 0.004, 0.714, 0.9999].map(in_100), [
-            "under 1 in 100",
-            "under 1 in 100",
-            "71 in 100",
-            "over 99 in 100"
-        ]);
+        assert_eq!(
+            [0.001, 0.004, 0.714, 0.9999].map(in_100),
+            [
+                "under 1 in 100",
+                "under 1 in 100",
+                "71 in 100",
+                "over 99 in 100"
+            ]
+        );
         assert_eq!(of_100(0.02), "2");
     }
 
     #[test]
     fn readings_are_told_from_commands() {
-        for yes in ["47", "0.35 MΩ", ">200 MΩ", "~230 V", "OL", "no trip", "Yes", "40..60", ".5", "<0.05"] {
+        for yes in [
+            "47", "0.35 MΩ", ">200 MΩ", "~230 V", "OL", "no trip", "Yes", "40..60", ".5", "<0.05",
+        ] {
             assert!(looks_like_reading(yes), "{yes}");
         }
         for no in ["rank", "hold 1", "", "note 5"] {
@@ -275,9 +350,19 @@ mod tests {
 
     #[test]
     fn one_unit_is_said_once() {
-        let expects = ExpectView::Number { hypothesis: "x".into(), p05: 0.1, p50: 1.0, p95: 2.0 };
+        let expects = ExpectView::Number {
+            hypothesis: "x".into(),
+            p05: 0.1,
+            p50: 1.0,
+            p95: 2.0,
+        };
         assert_eq!(expected(&expects, Unit::Volt), "0.1 to 2 V");
-        let expects = ExpectView::Number { hypothesis: "x".into(), p05: 3e5, p50: 1e6, p95: 2e9 };
+        let expects = ExpectView::Number {
+            hypothesis: "x".into(),
+            p05: 3e5,
+            p50: 1e6,
+            p95: 2e9,
+        };
         assert_eq!(expected(&expects, Unit::Ohm), "0.3 MΩ to 2 GΩ");
     }
 }

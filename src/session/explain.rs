@@ -61,7 +61,8 @@ pub fn expects(belief: &Belief, column: &[(usize, Forecast)]) -> Vec<ExpectView>
         .collect()
 }
 
-fn expect(hypothesis: &str, forecast: &Forecast) -> Option<ExpectView> {
+/// What one hypothesis would read; nothing where its forecast says nothing.
+pub fn expect(hypothesis: &str, forecast: &Forecast) -> Option<ExpectView> {
     let hypothesis = hypothesis.to_owned();
     let finite = |at: f64| forecast.quantile(at).filter(|value| value.is_finite());
     if let (Some(p05), Some(p50), Some(p95)) = (finite(0.05), finite(0.5), finite(0.95)) {

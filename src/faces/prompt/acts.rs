@@ -24,7 +24,13 @@ impl Desk {
     pub(super) fn command(&mut self, name: &str, words: &[String]) -> Answer {
         match name {
             "symptom" => self.symptom(words),
-            "advise" if words.iter().any(|word| word.trim_start_matches('-') == "more") => self.more(),
+            "advise"
+                if words
+                    .iter()
+                    .any(|word| word.trim_start_matches('-') == "more") =>
+            {
+                self.more()
+            }
             "advise" => self.advise_anew(),
             "other" => self.other(),
             "take" => self.take_test(words),
@@ -47,7 +53,10 @@ impl Desk {
     /// Asks for advice again, and shows the screen.
     pub(super) fn advise_anew(&mut self) -> Answer {
         let owed = self.session.checks_owed();
-        let ask = command::Advise { count: Some(COUNT), within_ms: None };
+        let ask = command::Advise {
+            count: Some(COUNT),
+            within_ms: None,
+        };
         let answer = self.session.advise(&ask)?;
         self.advice = answer.advice;
         self.why = answer.why;
@@ -63,8 +72,13 @@ impl Desk {
 
     /// The hold points of the test in hand as they stand now.
     pub(super) fn renew_hand(&mut self) -> Result<(), SessionError> {
-        let Some(hand) = &self.hand else { return Ok(()) };
-        match self.session.take_up(&hand.test.test.clone(), &hand.test.at.clone()) {
+        let Some(hand) = &self.hand else {
+            return Ok(());
+        };
+        match self
+            .session
+            .take_up(&hand.test.test.clone(), &hand.test.at.clone())
+        {
             Ok(check) => {
                 if let Some(hand) = &mut self.hand {
                     hand.points = check.hold_points;
@@ -83,16 +97,29 @@ impl Desk {
     fn symptom(&mut self, words: &[String]) -> Answer {
         const KEYS: [&str; 4] = ["at", "when", "with", "text"];
         let Some(kind) = words.first() else {
-            return Err(usage("no complaint was named", "symptom KIND at PLACE; Tab completes both"));
+            return Err(usage(
+                "no complaint was named",
+                "symptom KIND at PLACE; Tab completes both",
+            ));
         };
         if let Some(stray) = words.get(1).filter(|word| !KEYS.contains(&word.as_str())) {
-            return Err(usage(format!("`{stray}` stands where `at`, `when`, `with` or `text` belongs"), "symptom KIND at PLACE"));
+            return Err(usage(
+                format!("`{stray}` stands where `at`, `when`, `with` or `text` belongs"),
+                "symptom KIND at PLACE",
+            ));
         }
-        let when = part(words, "when", &KEYS).map(|word| read_when(&word)).transpose()?;
+        let when = part(words, "when", &KEYS)
+            .map(|word| read_when(&word))
+            .transpose()?;
         let with = part(words, "with", &KEYS).map(|text| self.resolve(&text));
         // Words of the person's own run to the end of the line.
-        let text = words.iter().position(|word| word == "text").and_then(|at| words.get(at + 1..));
-        let text = text.map(|rest| rest.join(" ")).filter(|text| !text.is_empty());
+        let text = words
+            .iter()
+            .position(|word| word == "text")
+            .and_then(|at| words.get(at + 1..));
+        let text = text
+            .map(|rest| rest.join(" "))
+            .filter(|text| !text.is_empty());
         let detail = Detail { when, with, text };
         let ask = command::Symptom {
             kind: kind.clone(),
@@ -102,7 +129,11 @@ impl Desk {
         let answer = self.session.symptom(&ask)?;
         let said = self.names().symptom(&ask.kind, ask.at.as_deref());
         let mut page = Page::new();
-        page.line(Text::new().plain(sentence(&said)).dim(format!(" (entry {})", answer.entry)));
+        page.line(
+            Text::new()
+                .plain(sentence(&said))
+                .dim(format!(" (entry {})", answer.entry)),
+        );
         page.extend(self.show_odds());
         page.blank().extend(self.advise_anew()?);
         Ok(page)
@@ -112,35 +143,56 @@ impl Desk {
     fn resolve(&self, text: &str) -> String {
         let engine = self.session.engine();
         let all = spots(engine.site());
-        let breakers = engine.site().boards.iter().flat_map(|b| &b.circuits).map(|c| format!("{}.breaker", c.id));
+        let breakers = engine
+            .site()
+            .boards
+            .iter()
+            .flat_map(|b| &b.circuits)
+            .map(|c| format!("{}.breaker", c.id));
         let ids: Vec<String> = all.into_keys().chain(breakers).collect();
         if ids.iter().any(|id| id == text) {
             return text.to_owned();
         }
         let wanted = text.to_lowercase();
         let named = |test: &dyn Fn(&str) -> bool| {
-            let mut found = ids.iter().filter(|id| test(&self.names().place(id).to_lowercase()));
+            let mut found = ids
+                .iter()
+                .filter(|id| test(&self.names().place(id).to_lowercase()));
             found.next().filter(|_| found.next().is_none()).cloned()
         };
-        named(&|name| name == wanted).or_else(|| named(&|name| name.contains(&wanted))).unwrap_or_else(|| text.to_owned())
+        named(&|name| name == wanted)
+            .or_else(|| named(&|name| name.contains(&wanted)))
+            .unwrap_or_else(|| text.to_owned())
     }
 
     /// `read TEST AT VALUE`.
     fn read(&mut self, words: &[String]) -> Answer {
         let [test, at, value @ ..] = words else {
-            return Err(usage("a reading needs its test, its place and its value", "read TEST AT VALUE; `tests` lists them"));
+            return Err(usage(
+                "a reading needs its test, its place and its value",
+                "read TEST AT VALUE; `tests` lists them",
+            ));
         };
         if value.is_empty() {
-            return Err(usage("the reading has no value", "read TEST AT VALUE, such as: read TEST AT 0.35 MΩ"));
+            return Err(usage(
+                "the reading has no value",
+                "read TEST AT VALUE, such as: read TEST AT 0.35 MΩ",
+            ));
         }
         self.give(test, at, &value.join(" "), None)
     }
 
     /// A value alone answers the test in hand.
     pub(super) fn value(&mut self, value: &str) -> Answer {
-        let Some(hand) = &self.hand else { return Err(no_hand()) };
+        let Some(hand) = &self.hand else {
+            return Err(no_hand());
+        };
         let (test, at) = (hand.test.test.clone(), hand.test.at.clone());
-        if hand.owed.is_some() { self.recheck_value(&test, &at, value) } else { self.give(&test, &at, value, None) }
+        if hand.owed.is_some() {
+            self.recheck_value(&test, &at, value)
+        } else {
+            self.give(&test, &at, value, None)
+        }
     }
 
     fn give(&mut self, test: &str, at: &str, value: &str, confirm: Option<bool>) -> Answer {
@@ -159,10 +211,17 @@ impl Desk {
 
     fn taken(&mut self, ask: &command::Reading, answer: &MovedAnswer) -> Answer {
         let name = self.names().test(&ask.test, &ask.at);
-        let parsed = answer.parsed.as_ref().map(super::super::words::reading).unwrap_or_default();
+        let parsed = answer
+            .parsed
+            .as_ref()
+            .map(super::super::words::reading)
+            .unwrap_or_default();
         let mut page = Page::new();
         page.line(
-            Text::new().value(parsed).plain(format!(", {name}.")).dim(format!(" (entry {})", answer.entry)),
+            Text::new()
+                .value(parsed)
+                .plain(format!(", {name}."))
+                .dim(format!(" (entry {})", answer.entry)),
         );
         if answer.surprise.is_some_and(|tail| tail < 0.01) {
             page.line("Hardly any cause explains this reading: repeat it, or look for what is not on the list.");
@@ -177,7 +236,11 @@ impl Desk {
         match error.code {
             ErrorCode::HoldPointOpen => {
                 let check = self.session.take_up(&ask.test, &ask.at)?;
-                if self.hand.as_ref().is_none_or(|hand| hand.test.test != ask.test || hand.test.at != ask.at) {
+                if self
+                    .hand
+                    .as_ref()
+                    .is_none_or(|hand| hand.test.test != ask.test || hand.test.at != ask.at)
+                {
                     self.hand = Some(Hand::looked_up(&check));
                 } else if let Some(hand) = &mut self.hand {
                     hand.points = check.hold_points;
@@ -195,12 +258,18 @@ impl Desk {
                      read again.",
                     list(&open)
                 )));
-                page.extend(self.next());
+                if let Some(hand) = &self.hand {
+                    page.extend(self.points_page(hand));
+                }
                 Ok(page)
             }
             ErrorCode::NotCredible => {
                 let mut page = Page::new();
-                page.line(Text::new().with(Meaning::Wrong, "Held back: ").plain(sentence(&error.message)));
+                page.line(
+                    Text::new()
+                        .with(Meaning::Wrong, "Held back: ")
+                        .plain(sentence(&error.message)),
+                );
                 page.line(
                     Text::new()
                         .plain("Was another range or unit meant, another place, another setup? If it stands, say ")
@@ -216,14 +285,22 @@ impl Desk {
 
     fn sure(&mut self) -> Answer {
         let Some(ask) = self.questioned.take() else {
-            return Err(usage("no reading was questioned", "give a reading; `sure` is for one that was held back"));
+            return Err(usage(
+                "no reading was questioned",
+                "give a reading; `sure` is for one that was held back",
+            ));
         };
         self.give(&ask.test, &ask.at, &ask.value, Some(true))
     }
 
     fn cannot(&mut self, words: &[String]) -> Answer {
-        let Some(hand) = &self.hand else { return Err(no_hand()) };
-        let key = TestAt { test: hand.test.test.clone(), at: hand.test.at.clone() };
+        let Some(hand) = &self.hand else {
+            return Err(no_hand());
+        };
+        let key = TestAt {
+            test: hand.test.test.clone(),
+            at: hand.test.at.clone(),
+        };
         if let Some((first, why)) = words.split_first()
             && self.names_point(first)
         {
@@ -231,7 +308,12 @@ impl Desk {
         }
         let why = words.join(" ");
         let why = (!why.is_empty()).then_some(why);
-        let answer = self.session.cannot(&command::Cannot { test: key.test, at: key.at, why, undo: None })?;
+        let answer = self.session.cannot(&command::Cannot {
+            test: key.test,
+            at: key.at,
+            why,
+            undo: None,
+        })?;
         let mut page = Page::new();
         page.line(Text::new().plain("Noted; it costs nothing.").dim(format!(
             " (entry {}; retract {} brings it back)",
@@ -242,28 +324,47 @@ impl Desk {
     }
 
     fn whatif(&mut self, words: &[String]) -> Answer {
-        let Some(hand) = &self.hand else { return Err(no_hand()) };
+        let Some(hand) = &self.hand else {
+            return Err(no_hand());
+        };
         if words.is_empty() {
             return Err(usage("no value came", "whatif VALUE, such as: whatif 47 V"));
         }
         let (test, at) = (hand.test.test.clone(), hand.test.at.clone());
-        let answer = self.session.whatif(&command::WhatIf { test, at, value: words.join(" ") })?;
+        let answer = self.session.whatif(&command::WhatIf {
+            test,
+            at,
+            value: words.join(" "),
+        })?;
         let mut page = Page::new();
         page.line(Text::new().plain("As it would be; nothing is recorded:"));
-        self.was = self.names().causes(&self.session.odds(MANY), usize::MAX).into_iter().map(|c| (c.key, c.p)).collect();
+        self.was = self
+            .names()
+            .causes(&self.session.odds(MANY), usize::MAX)
+            .into_iter()
+            .map(|c| (c.key, c.p))
+            .collect();
         page.extend(self.odds_page(&answer.odds, 8, true));
         Ok(page)
     }
 
     fn retract(&mut self, words: &[String]) -> Answer {
-        let entry = words.first().and_then(|word| word.parse().ok()).ok_or_else(|| {
-            usage("no entry was named", "retract N, with the number of an entry; `log` lists them")
-        })?;
+        let entry = words
+            .first()
+            .and_then(|word| word.parse().ok())
+            .ok_or_else(|| {
+                usage(
+                    "no entry was named",
+                    "retract N, with the number of an entry; `log` lists them",
+                )
+            })?;
         let answer = self.session.retract(&command::Retract { entry })?;
         let mut page = Page::new();
         page.line(
             Text::new()
-                .plain(format!("Entry {entry} no longer counts; the log keeps both."))
+                .plain(format!(
+                    "Entry {entry} no longer counts; the log keeps both."
+                ))
                 .dim(format!(" (entry {})", answer.entry)),
         );
         page.extend(self.show_odds());
@@ -272,9 +373,15 @@ impl Desk {
     }
 
     fn note(&mut self, words: &[String]) -> Answer {
-        let answer = self.session.note(&command::Note { text: words.join(" ") })?;
+        let answer = self.session.note(&command::Note {
+            text: words.join(" "),
+        })?;
         let mut page = Page::new();
-        page.line(Text::new().with(Meaning::Done, "Noted").dim(format!(" (entry {}).", answer.entry)));
+        page.line(
+            Text::new()
+                .with(Meaning::Done, "Noted")
+                .dim(format!(" (entry {}).", answer.entry)),
+        );
         Ok(page)
     }
 
@@ -288,31 +395,52 @@ impl Desk {
         let said = words.first().map(String::as_str).unwrap_or_default();
         let Some((_, outcome)) = OUTCOMES.iter().find(|(word, _)| *word == said) else {
             let near = nearest(said, OUTCOMES.map(|(word, _)| word), 1);
-            let hint = near.first().map_or("close as repaired, made-safe, referred or nothing-found".to_owned(), |n| {
-                format!("the nearest is `{n}`")
-            });
+            let hint = near.first().map_or(
+                "close as repaired, made-safe, referred or nothing-found".to_owned(),
+                |n| format!("the nearest is `{n}`"),
+            );
             return Err(usage(format!("`{said}` is no way to end a visit"), hint));
         };
-        let note = words.get(1..).map(|rest| rest.join(" ")).filter(|note| !note.is_empty());
-        let answer = self.session.close(&command::Close { outcome: *outcome, note })?;
+        let note = words
+            .get(1..)
+            .map(|rest| rest.join(" "))
+            .filter(|note| !note.is_empty());
+        let answer = self.session.close(&command::Close {
+            outcome: *outcome,
+            note,
+        })?;
         let mut page = Page::new();
-        page.line(Text::new().plain(format!("Closed: {}.", said.replace('-', " "))).dim(format!(" (entry {})", answer.entry)));
+        page.line(
+            Text::new()
+                .plain(format!("Closed: {}.", said.replace('-', " ")))
+                .dim(format!(" (entry {})", answer.entry)),
+        );
         if let Some(path) = &self.log {
-            page.line(Text::new().plain("Its story: ").word(format!("straypath audit {}", path.display())));
+            page.line(
+                Text::new()
+                    .plain("Its story: ")
+                    .word(format!("straypath audit {}", path.display())),
+            );
         }
         Ok(page)
     }
 
     fn verdict_page(&mut self) -> Page {
-        let answer = self.session.ranking(&command::Ranking { count: Some(MANY) });
+        let answer = self
+            .session
+            .ranking(&command::Ranking { count: Some(MANY) });
         self.verdict = answer.verdict;
         match &self.verdict {
             Some(verdict) => self.decide(verdict),
             None => {
                 let best = self.names().causes(&answer.odds, 1).into_iter().next();
                 let mut page = Page::new();
-                let best = best.map(|cause| format!(" Leading: {}, {}.", cause.name, in_100(cause.p))).unwrap_or_default();
-                page.line(format!("None yet: a further test is expected to cost less than acting now.{best}"));
+                let best = best
+                    .map(|cause| format!(" Leading: {}, {}.", cause.name, in_100(cause.p)))
+                    .unwrap_or_default();
+                page.line(format!(
+                    "None yet: a further test is expected to cost less than acting now.{best}"
+                ));
                 page
             }
         }
@@ -320,9 +448,24 @@ impl Desk {
 }
 
 fn read_when(word: &str) -> Result<When, SessionError> {
-    let all = [When::Always, When::AtOnce, When::InUse, When::SwitchingOn, When::NowAndThen, When::Rain, When::Once];
+    let all = [
+        When::Always,
+        When::AtOnce,
+        When::InUse,
+        When::SwitchingOn,
+        When::NowAndThen,
+        When::Rain,
+        When::Once,
+    ];
     let said = word.replace(' ', "-");
     all.into_iter()
         .find(|when| when.as_str() == said)
-        .ok_or_else(|| SessionError::unknown(ErrorCode::UnknownWord, "word for when", word, all.map(When::as_str)))
+        .ok_or_else(|| {
+            SessionError::unknown(
+                ErrorCode::UnknownWord,
+                "word for when",
+                word,
+                all.map(When::as_str),
+            )
+        })
 }

@@ -55,7 +55,10 @@ impl Hand {
 
     /// A re-test that is owed.
     pub fn owed(check: &CheckOwed) -> Self {
-        Self { owed: Some(check.clone()), ..Self::looked_up(check) }
+        Self {
+            owed: Some(check.clone()),
+            ..Self::looked_up(check)
+        }
     }
 
     /// Points that are still open.
@@ -124,7 +127,10 @@ impl Desk {
         page.line(
             Text::new()
                 .with(Meaning::Place, site.name.clone())
-                .dim(format!("  visit {}, {} causes, {} tests", answer.session, answer.hypotheses, answer.tests)),
+                .dim(format!(
+                    "  visit {}, {} causes, {} tests",
+                    answer.session, answer.hypotheses, answer.tests
+                )),
         );
         if let Some(entries) = answer.entries {
             page.line(format!(
@@ -144,8 +150,16 @@ impl Desk {
 
     /// The first screen.
     pub fn begin(&mut self) -> Page {
-        let resumed = self.session.records().iter().any(|record| matches!(record.event, Event::Symptom(_)));
-        if resumed { self.advise_anew().unwrap_or_else(|error| refused(&error)) } else { self.screen() }
+        let resumed = self
+            .session
+            .records()
+            .iter()
+            .any(|record| matches!(record.event, Event::Symptom(_)));
+        if resumed {
+            self.advise_anew().unwrap_or_else(|error| refused(&error))
+        } else {
+            self.screen()
+        }
     }
 
     /// The prompt: what is dead, and what is still open before a reading.
@@ -171,10 +185,12 @@ impl Desk {
     /// `service`, boards and circuits.
     pub(super) fn all_places(&self) -> Vec<String> {
         let boards = &self.session.engine().site().boards;
-        let each = boards
-            .iter()
-            .flat_map(|board| std::iter::once(&board.id).chain(board.circuits.iter().map(|circuit| &circuit.id)));
-        std::iter::once("service".to_owned()).chain(each.cloned()).collect()
+        let each = boards.iter().flat_map(|board| {
+            std::iter::once(&board.id).chain(board.circuits.iter().map(|circuit| &circuit.id))
+        });
+        std::iter::once("service".to_owned())
+            .chain(each.cloned())
+            .collect()
     }
 
     /// Orders that the complaints owe.
@@ -224,14 +240,22 @@ impl Desk {
             page.line(
                 Text::new()
                     .danger("Left as it stands: ")
-                    .plain(format!("open {}; lifted {}.", names.places(&open), names.places(&lifted)))
+                    .plain(format!(
+                        "open {}; lifted {}.",
+                        names.places(&open),
+                        names.places(&lifted)
+                    ))
                     .plain(" Lock, tag, and tell whoever comes next."),
             );
         }
         match &self.log {
             Some(path) => {
                 let path = path.display();
-                page.line(Text::new().plain("The visit is kept: ").word(format!("straypath attend --resume {path}")))
+                page.line(
+                    Text::new()
+                        .plain("The visit is kept: ")
+                        .word(format!("straypath attend --resume {path}")),
+                )
             }
             None => page.line("The visit was not kept."),
         };
@@ -267,7 +291,9 @@ impl Desk {
 
 fn unknown(word: &str, nearest: &[String]) -> Page {
     let mut page = Page::new();
-    let mut text = Text::new().with(Meaning::Wrong, "No command ").plain(format!("`{word}`. "));
+    let mut text = Text::new()
+        .with(Meaning::Wrong, "No command ")
+        .plain(format!("`{word}`. "));
     text = match nearest {
         [] => text.plain("Type ").word("help"),
         near => text.plain("Type ").word(near.join(", or ")),
@@ -279,8 +305,10 @@ fn unknown(word: &str, nearest: &[String]) -> Page {
 /// A refusal: what, and the way on.
 pub fn refused(error: &SessionError) -> Page {
     let mut page = Page::new();
-    let mut text =
-        Text::new().with(Meaning::Wrong, "No: ").plain(super::super::words::sentence(&error.message)).plain(" ");
+    let mut text = Text::new()
+        .with(Meaning::Wrong, "No: ")
+        .plain(super::super::words::sentence(&error.message))
+        .plain(" ");
     if !error.hint.is_empty() {
         text = text.plain(super::super::words::sentence(&error.hint));
     }

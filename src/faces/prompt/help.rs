@@ -24,7 +24,12 @@ pub fn help(about: Option<&str>) -> Answer {
     };
     let Some((name, parts, what)) = COMMANDS.iter().find(|(name, ..)| *name == about) else {
         let names = COMMANDS.iter().map(|(name, ..)| *name);
-        return Err(SessionError::unknown(ErrorCode::UnknownWord, "command", about, names));
+        return Err(SessionError::unknown(
+            ErrorCode::UnknownWord,
+            "command",
+            about,
+            names,
+        ));
     };
     page.line(Text::new().word(format!("{name} {parts}")));
     page.line(*what);

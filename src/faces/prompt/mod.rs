@@ -5,6 +5,7 @@ mod complete;
 mod desk;
 mod help;
 mod lists;
+mod path;
 mod points;
 mod progress;
 mod repairs;
@@ -19,7 +20,7 @@ use std::io::{self, BufRead, IsTerminal, Write};
 use std::path::PathBuf;
 use std::sync::Arc;
 
-pub use desk::Desk;
+pub use desk::{Desk, MANY};
 pub use source::{Input, LineSource};
 
 use super::Trouble;
@@ -67,13 +68,23 @@ fn open(options: &Options) -> Result<(Session, OpenAnswer), Trouble> {
         Some(path) => Log::open(path).map_err(SessionError::from)?.0,
         None => Log::in_memory(),
     };
-    let ask = Open { site: Some(site), path: None, kit: options.kit.clone(), seed: options.seed };
-    Session::open(&knowledge, Clock::System, log, &ask).map_err(|error| match (error.code, &options.log) {
-        (ErrorCode::LogNotEmpty, Some(path)) => Trouble::Usage {
-            message: format!("{}: {error}", path.display()),
-            hint: format!("go on with it by --resume {}, or name a new file", path.display()),
-        },
-        _ => error.into(),
+    let ask = Open {
+        site: Some(site),
+        path: None,
+        kit: options.kit.clone(),
+        seed: options.seed,
+    };
+    Session::open(&knowledge, Clock::System, log, &ask).map_err(|error| {
+        match (error.code, &options.log) {
+            (ErrorCode::LogNotEmpty, Some(path)) => Trouble::Usage {
+                message: format!("{}: {error}", path.display()),
+                hint: format!(
+                    "go on with it by --resume {}, or name a new file",
+                    path.display()
+                ),
+            },
+            _ => error.into(),
+        }
     })
 }
 
@@ -84,8 +95,14 @@ fn open(options: &Options) -> Result<(Session, OpenAnswer), Trouble> {
 pub fn run(options: &Options, mut paper: Paper<impl Write>, err: Style) -> Result<(), Trouble> {
     let at_terminal = io::stdin().is_terminal() && io::stdout().is_terminal();
     let progress = Progress::new(io::stderr().is_terminal(), err);
-    let (session, answer) = progress.over("opening: the circuit is solved under every fault", || open(options))?;
-    let mut desk = Desk::new(session, options.log.clone().or_else(|| options.resume.clone()));
+    let (session, answer) = progress
+        .over("opening: the circuit is solved under every fault", || {
+            open(options)
+        })?;
+    let mut desk = Desk::new(
+        session,
+        options.log.clone().or_else(|| options.resume.clone()),
+    );
     paper.show(&desk.greeting(&answer))?;
     paper.show(&progress.over("thinking", || desk.begin()))?;
     if at_terminal {
@@ -101,8 +118,17 @@ pub fn run(options: &Options, mut paper: Paper<impl Write>, err: Style) -> Resul
 ///
 /// # Errors
 /// The input cannot be read, or the output not written.
-pub fn serve(desk: &mut Desk, input: impl BufRead, paper: &mut Paper<impl Write>) -> Result<(), Trouble> {
-    lead(desk, &mut Piped::new(input), paper, &Progress::new(false, Style::plain()))
+pub fn serve(
+    desk: &mut Desk,
+    input: impl BufRead,
+    paper: &mut Paper<impl Write>,
+) -> Result<(), Trouble> {
+    lead(
+        desk,
+        &mut Piped::new(input),
+        paper,
+        &Progress::new(false, Style::plain()),
+    )
 }
 
 fn lead(
@@ -127,7 +153,10 @@ fn lead(
             Input::Dropped => desk.drop_question(),
             Input::Line(line) => {
                 if source.echoes() {
-                    paper.raw(&format!("{}\n", crate::faces::text::Text::from(line.as_str()).bare()))?;
+                    paper.raw(&format!(
+                        "{}\n",
+                        crate::faces::text::Text::from(line.as_str()).bare()
+                    ))?;
                 }
                 if let Some(width) = source.width() {
                     paper.width = width;

@@ -33,7 +33,12 @@ impl Asking {
     pub fn prompt(&self) -> String {
         match self.want() {
             Some(want) => {
-                format!("  {} of {}: {}, volts > ", self.given.len() + 1, self.point.wants.len(), want.name)
+                format!(
+                    "  {} of {}: {}, volts > ",
+                    self.given.len() + 1,
+                    self.point.wants.len(),
+                    want.name
+                )
             }
             None => "  > ".to_owned(),
         }
@@ -52,7 +57,9 @@ impl Desk {
         let now = hand.points.iter().position(|point| !point.done);
         for (at, point) in hand.points.iter().enumerate() {
             let mark = if point.done {
-                Text::new().plain(format!("{:>2} ", at + 1)).with(Meaning::Done, "(x)")
+                Text::new()
+                    .plain(format!("{:>2} ", at + 1))
+                    .with(Meaning::Done, "(x)")
             } else {
                 Text::new().plain(format!("{:>2} ( )", at + 1))
             };
@@ -60,14 +67,22 @@ impl Desk {
             lead.0.extend(mark.0);
             // What is done, or comes later, is said in short; what is to be done now in full.
             let full = Some(at) == now;
-            let mut text = if full { sentence(&point.text) } else { short(&point.text) };
+            let mut text = if full {
+                sentence(&point.text)
+            } else {
+                short(&point.text)
+            };
             if let (Some(test), Some(place), false) = (&point.test, &point.at, point.done) {
                 text = format!("{text} Done by: take {test} {place}");
             }
             page.hang(lead, MARGIN + 7, text);
             if full && !point.wants.is_empty() {
                 let wants: Vec<String> = point.wants.iter().map(|want| want.name.clone()).collect();
-                let limit = point.wants.iter().map(|want| want.limit_volts).fold(f64::INFINITY, f64::min);
+                let limit = point
+                    .wants
+                    .iter()
+                    .map(|want| want.limit_volts)
+                    .fold(f64::INFINITY, f64::min);
                 page.hang(
                     "",
                     MARGIN + 7,
@@ -90,7 +105,9 @@ impl Desk {
     /// `hold`, `done`.
     pub(super) fn hold(&mut self, words: &[String]) -> Answer {
         let Some((which, given)) = words.split_first() else {
-            let Some(hand) = &self.hand else { return Err(no_hand()) };
+            let Some(hand) = &self.hand else {
+                return Err(no_hand());
+            };
             let mut page = self.points_page(hand);
             if hand.points.is_empty() {
                 page.line("This test has no hold points.");
@@ -106,12 +123,22 @@ impl Desk {
             page.line(format!("{} is done already.", point.point));
             return Ok(page);
         }
-        let given: Vec<String> = given.iter().map(|word| word.trim_end_matches([',', ';']).to_owned()).collect();
+        let given: Vec<String> = given
+            .iter()
+            .map(|word| word.trim_end_matches([',', ';']).to_owned())
+            .collect();
         let given = joined(given);
         if given.is_empty() && !point.wants.is_empty() && point.test.is_none() {
             let mut page = Page::new();
-            page.line(Text::new().plain(sentence(&point.text)).dim(" An empty line gives up."));
-            self.asking = Some(Asking { point, given: Vec::new() });
+            page.line(
+                Text::new()
+                    .plain(sentence(&point.text))
+                    .dim(" An empty line gives up."),
+            );
+            self.asking = Some(Asking {
+                point,
+                given: Vec::new(),
+            });
             return Ok(page);
         }
         self.point_done(&point, &given)
@@ -139,7 +166,8 @@ impl Desk {
             return Page::new();
         }
         let Asking { point, given } = asking;
-        self.point_done(&point, &given).unwrap_or_else(|error| refused(&error))
+        self.point_done(&point, &given)
+            .unwrap_or_else(|error| refused(&error))
     }
 
     fn point_done(&mut self, point: &HoldPoint, given: &[String]) -> Answer {
@@ -147,8 +175,16 @@ impl Desk {
         if given.len() != wanted {
             let names: Vec<&str> = point.wants.iter().map(|want| want.name.as_str()).collect();
             let text = match wanted {
-                0 => format!("`{}` takes no readings, and {} came", point.point, given.len()),
-                n => format!("`{}` takes {n} readings, and {} came", point.point, given.len()),
+                0 => format!(
+                    "`{}` takes no readings, and {} came",
+                    point.point,
+                    given.len()
+                ),
+                n => format!(
+                    "`{}` takes {n} readings, and {} came",
+                    point.point,
+                    given.len()
+                ),
             };
             let hint = match wanted {
                 0 => format!("say `done {}` when it is done", point.point),
@@ -156,8 +192,12 @@ impl Desk {
             };
             return Err(refuse(ErrorCode::BadRequest, text, &hint));
         }
-        let readings: BTreeMap<String, String> =
-            point.wants.iter().map(|want| want.name.clone()).zip(given.iter().cloned()).collect();
+        let readings: BTreeMap<String, String> = point
+            .wants
+            .iter()
+            .map(|want| want.name.clone())
+            .zip(given.iter().cloned())
+            .collect();
         let ask = command::HoldPoint {
             point: point.point.clone(),
             done: true,
@@ -172,15 +212,48 @@ impl Desk {
         };
         self.verdict = answer.verdict;
         let mut page = Page::new();
-        let seen: Vec<String> =
-            point.wants.iter().zip(given).map(|(want, volts)| format!("{} {}", with_volts(volts), want.name)).collect();
+        let seen: Vec<String> = point
+            .wants
+            .iter()
+            .zip(given)
+            .map(|(want, volts)| format!("{} {}", with_volts(volts), want.name))
+            .collect();
         let said = match seen.as_slice() {
-            [] => Text::new().with(Meaning::Done, "Done: ").plain(short(&point.text)),
-            seen => Text::new().with(Meaning::Done, "Dead: ").plain(seen.join(", ")).plain("."),
+            [] => Text::new()
+                .with(Meaning::Done, "Done: ")
+                .plain(short(&point.text)),
+            seen => Text::new()
+                .with(Meaning::Done, "Dead: ")
+                .plain(seen.join(", "))
+                .plain("."),
         };
         page.line(said.dim(format!(" (entry {})", answer.entry)));
+        page.extend(self.after_point()?);
+        Ok(page)
+    }
+
+    /// What is left to do before the reading; behind the last point, how to take it.
+    fn after_point(&mut self) -> Answer {
+        let before = self.hand.as_ref().map(|hand| hand.test.clone());
         self.renew_hand()?;
-        page.blank().extend(self.screen());
+        let Some(hand) = &self.hand else {
+            return Ok(self.screen());
+        };
+        if before.is_none_or(|test| test.test != hand.test.test || test.at != hand.test.at) {
+            return Ok(self.screen());
+        }
+        let mut page = self.header();
+        if hand.open().next().is_some() {
+            page.extend(self.points_page(hand));
+        } else {
+            page.hang(
+                Text::new().with(Meaning::Head, "NOW"),
+                MARGIN,
+                Text::new().value(sentence(&hand.test.name)),
+            );
+            page.extend(self.measure_page(hand));
+        }
+        page.line(self.ready());
         Ok(page)
     }
 
@@ -207,7 +280,11 @@ impl Desk {
         let point = self.point(which)?;
         if why.is_empty() {
             let text = format!("`{}` cannot be done, and no reason came", point.point);
-            return Err(refuse(ErrorCode::BadRequest, text, &format!("say why: cannot {which} no key for the lock")));
+            return Err(refuse(
+                ErrorCode::BadRequest,
+                text,
+                &format!("say why: cannot {which} no key for the lock"),
+            ));
         }
         let ask = command::HoldPoint {
             point: point.point.clone(),
@@ -218,33 +295,55 @@ impl Desk {
         };
         let answer = self.session.hold_point(&ask)?;
         let mut page = Page::new();
-        page.line(format!("Noted (entry {}). Tests that need it stay closed.", answer.entry));
+        page.line(format!(
+            "Noted (entry {}). Tests that need it stay closed.",
+            answer.entry
+        ));
         page.blank().extend(self.advise_anew()?);
         Ok(page)
     }
 
     fn first_is_done(&mut self) -> Answer {
-        let point = |done| command::HoldPoint { point: MAKE_SAFE.into(), done, readings: None, why: None, by: None };
+        let point = |done| command::HoldPoint {
+            point: MAKE_SAFE.into(),
+            done,
+            readings: None,
+            why: None,
+            by: None,
+        };
         let entry = match self.session.hold_point(&point(true)) {
             Ok(answer) => answer.entry,
             Err(error) if error.code == ErrorCode::UnknownWord => {
                 if self.orders().is_empty() {
-                    return Err(refuse(ErrorCode::BadRequest, "nothing stands under FIRST", "take what stands under NEXT"));
+                    return Err(refuse(
+                        ErrorCode::BadRequest,
+                        "nothing stands under FIRST",
+                        "take what stands under NEXT",
+                    ));
                 }
-                self.session.note(&command::Note { text: ORDERS_DONE.into() })?.entry
+                self.session
+                    .note(&command::Note {
+                        text: ORDERS_DONE.into(),
+                    })?
+                    .entry
             }
             Err(error) => return Err(error),
         };
         let mut page = Page::new();
-        page.line(Text::new().with(Meaning::Done, "Noted").dim(format!(" (entry {entry}).")));
-        self.renew_hand()?;
-        page.blank().extend(self.screen());
+        page.line(
+            Text::new()
+                .with(Meaning::Done, "Noted")
+                .dim(format!(" (entry {entry}).")),
+        );
+        page.extend(self.after_point()?);
         Ok(page)
     }
 
     /// The hold point of a number in the list, or of an id.
     fn point(&self, which: &str) -> Result<HoldPoint, SessionError> {
-        let Some(hand) = &self.hand else { return Err(no_hand()) };
+        let Some(hand) = &self.hand else {
+            return Err(no_hand());
+        };
         let number = which.parse::<usize>().ok().and_then(|n| n.checked_sub(1));
         let found = match number {
             Some(at) => hand.points.get(at),
@@ -268,19 +367,33 @@ impl Desk {
 
 /// The refusal where no test is in hand.
 pub fn no_hand() -> SessionError {
-    refuse(ErrorCode::BadRequest, "no test is in hand", "say `advise`, or `take TEST AT`; `tests` lists them")
+    refuse(
+        ErrorCode::BadRequest,
+        "no test is in hand",
+        "say `advise`, or `take TEST AT`; `tests` lists them",
+    )
 }
 
 /// The first sentence.
 fn short(text: &str) -> String {
-    let end = text.find(". ").or_else(|| text.find(": ")).map_or(text.len(), |at| at + 1);
-    let first = text.get(..end).unwrap_or(text).trim_end_matches([':', ';', '.']);
+    let end = text
+        .find(". ")
+        .or_else(|| text.find(": "))
+        .map_or(text.len(), |at| at + 1);
+    let first = text
+        .get(..end)
+        .unwrap_or(text)
+        .trim_end_matches([':', ';', '.']);
     sentence(first)
 }
 
 /// `0.1 V` from `0.1`, and from `0.1 V`.
 fn with_volts(text: &str) -> String {
-    if text.ends_with(|c: char| c.is_ascii_digit()) { format!("{text} V") } else { text.to_owned() }
+    if text.ends_with(|c: char| c.is_ascii_digit()) {
+        format!("{text} V")
+    } else {
+        text.to_owned()
+    }
 }
 
 /// Numbers typed apart from their units are put together again: `0.1 V 0.2 V`.
@@ -305,14 +418,19 @@ mod tests {
 
     #[test]
     fn readings_and_their_units_belong_together() {
-        let words = ["0.0", "V", "0.1", "12", "mV", "OL"].map(str::to_owned).to_vec();
+        let words = ["0.0", "V", "0.1", "12", "mV", "OL"]
+            .map(str::to_owned)
+            .to_vec();
         assert_eq!(joined(words), ["0.0 V", "0.1", "12 mV", "OL"]);
         assert_eq!([with_volts("0.1"), with_volts("12 mV")], ["0.1 V", "12 mV"]);
     }
 
     #[test]
     fn what_comes_later_is_said_in_short() {
-        assert_eq!(short("Find every source: main; a second tariff. Tell the occupants."), "Find every source: main; a second tariff.");
+        assert_eq!(
+            short("Find every source: main; a second tariff. Tell the occupants."),
+            "Find every source: main; a second tariff."
+        );
         assert_eq!(short("Prove the tester"), "Prove the tester.");
     }
 }

@@ -36,7 +36,11 @@ impl Progress {
                 }
                 let mut err = io::stderr().lock();
                 // Nobody is harmed when this line cannot be shown.
-                let _ = write!(err, "{}", self.style.paint(Meaning::Dim, &format!("{what} …")));
+                let _ = write!(
+                    err,
+                    "{}",
+                    self.style.paint(Meaning::Dim, &format!("{what} …"))
+                );
                 let _ = err.flush();
                 drop(err);
                 let _ = waiting.recv();

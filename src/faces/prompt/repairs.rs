@@ -37,18 +37,30 @@ impl Desk {
         };
         let note = (!rest.is_empty()).then(|| rest.join(" "));
         let what = self.names().faults(&faults);
-        let answer = self.session.repair(&command::Repair { faults, found, done, note })?;
+        let answer = self.session.repair(&command::Repair {
+            faults,
+            found,
+            done,
+            note,
+        })?;
         let mut page = Page::new();
         let said = match (found, done) {
             (true, None) => "Found and put right",
             (true, _) => "Found, not put right",
             _ => "Looked for, and not there",
         };
-        page.line(Text::new().plain(format!("{said}: {what}.")).dim(format!(" (entry {})", answer.entry)));
+        page.line(
+            Text::new()
+                .plain(format!("{said}: {what}."))
+                .dim(format!(" (entry {})", answer.entry)),
+        );
         page.extend(self.show_odds());
         let owed = answer.checks.unwrap_or_default();
         if !owed.is_empty() {
-            page.blank().line(Text::new().value(format!("{} re-tests are owed before the visit can close as repaired:", owed.len())));
+            page.blank().line(Text::new().value(format!(
+                "{} re-tests are owed before the visit can close as repaired:",
+                owed.len()
+            )));
             for check in &owed {
                 page.hang("  -", 4, sentence(&check.test.name));
                 page.extend(limits(check));
@@ -68,14 +80,24 @@ impl Desk {
         }
         let owed = self.session.owed().first().cloned();
         match (owed, words.is_empty()) {
-            (_, true) => Err(usage("no value came", "recheck VALUE, or recheck TEST AT VALUE")),
+            (_, true) => Err(usage(
+                "no value came",
+                "recheck VALUE, or recheck TEST AT VALUE",
+            )),
             (Some(key), _) => self.recheck_value(&key.test, &key.at, &words.join(" ")),
-            (None, _) => Err(usage("no re-test is owed", "recheck TEST AT VALUE makes one all the same")),
+            (None, _) => Err(usage(
+                "no re-test is owed",
+                "recheck TEST AT VALUE makes one all the same",
+            )),
         }
     }
 
     pub(super) fn recheck_value(&mut self, test: &str, at: &str, value: &str) -> Answer {
-        let ask = command::Recheck { test: test.to_owned(), at: at.to_owned(), value: value.to_owned() };
+        let ask = command::Recheck {
+            test: test.to_owned(),
+            at: at.to_owned(),
+            value: value.to_owned(),
+        };
         let answer = match self.session.recheck(&ask) {
             Ok(answer) => answer,
             Err(error) if error.code == ErrorCode::HoldPointOpen => {
@@ -108,7 +130,10 @@ impl Desk {
         );
         let left = self.session.owed().len();
         page.line(match left {
-            0 => Text::new().plain("No re-test is owed any more. Then ").word("close repaired").plain("."),
+            0 => Text::new()
+                .plain("No re-test is owed any more. Then ")
+                .word("close repaired")
+                .plain("."),
             1 => Text::from("1 re-test is still owed."),
             n => Text::from(format!("{n} re-tests are still owed.")),
         });
@@ -128,12 +153,17 @@ impl Desk {
             Some(at) => odds.ranking.get(at),
             None => odds.ranking.iter().find(|row| row.hypothesis == word),
         };
-        row.map(|row| (row.hypothesis.clone(), row.faults.clone())).ok_or_else(|| {
-            let hint = match odds.ranking.len() {
-                0 => "say first what is wrong, with `symptom`".to_owned(),
-                n => format!("name one by its number, 1 to {n}, in `ranking {n}`"),
-            };
-            SessionError::new(ErrorCode::UnknownWord, format!("there is no cause `{word}`"), hint)
-        })
+        row.map(|row| (row.hypothesis.clone(), row.faults.clone()))
+            .ok_or_else(|| {
+                let hint = match odds.ranking.len() {
+                    0 => "say first what is wrong, with `symptom`".to_owned(),
+                    n => format!("name one by its number, 1 to {n}, in `ranking {n}`"),
+                };
+                SessionError::new(
+                    ErrorCode::UnknownWord,
+                    format!("there is no cause `{word}`"),
+                    hint,
+                )
+            })
     }
 }

@@ -65,7 +65,8 @@ impl<R: BufRead> LineSource for Piped<R> {
 
 /// Columns that the terminal says it has.
 pub fn dimensions() -> Option<usize> {
-    let mut editor = Editor::<(), MemHistory>::with_history(Config::default(), MemHistory::new()).ok()?;
+    let mut editor =
+        Editor::<(), MemHistory>::with_history(Config::default(), MemHistory::new()).ok()?;
     editor.dimensions().map(|(columns, _)| usize::from(columns))
 }
 
@@ -80,8 +81,15 @@ impl Terminal {
     /// # Errors
     /// A terminal that cannot be used.
     pub fn new(desk: &Desk, style: Style) -> io::Result<Self> {
-        let colours = if style.is_colour() { ColorMode::Enabled } else { ColorMode::Disabled };
-        let config = Config::builder().completion_type(CompletionType::List).auto_add_history(true).color_mode(colours);
+        let colours = if style.is_colour() {
+            ColorMode::Enabled
+        } else {
+            ColorMode::Disabled
+        };
+        let config = Config::builder()
+            .completion_type(CompletionType::List)
+            .auto_add_history(true)
+            .color_mode(colours);
         let mut editor =
             Editor::with_history(config.build(), MemHistory::new()).map_err(|e| other(&e))?;
         editor.set_helper(Some(Completions::of(desk)));
@@ -111,6 +119,9 @@ impl LineSource for Terminal {
 
     fn width(&mut self) -> Option<usize> {
         let (columns, _) = self.editor.dimensions()?;
-        Some(super::super::text::columns(Some(usize::from(columns)), None))
+        Some(super::super::text::columns(
+            Some(usize::from(columns)),
+            None,
+        ))
     }
 }

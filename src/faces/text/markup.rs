@@ -2,7 +2,7 @@
 
 use super::style::Style;
 use super::table::Table;
-use super::wrap::{pad, wrap};
+use super::wrap::{FIRM, margin, pad, wrap};
 
 /// What a piece of text means.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, PartialOrd, Ord)]
@@ -104,7 +104,10 @@ impl Text {
 
     /// Its pieces one after another, styled.
     pub fn render(&self, style: &Style) -> String {
-        self.0.iter().map(|piece| style.paint(piece.meaning, &piece.text)).collect()
+        self.0
+            .iter()
+            .map(|piece| style.paint(piece.meaning, &piece.text))
+            .collect()
     }
 }
 
@@ -126,7 +129,11 @@ fn shown(text: &str) -> String {
     text.chars()
         .map(|c| match c {
             '\n' | '\t' => ' ',
-            c if c.is_control() || matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}') => '\u{fffd}',
+            c if c.is_control()
+                || matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}') =>
+            {
+                '\u{fffd}'
+            }
             c => c,
         })
         .collect()
@@ -169,8 +176,17 @@ impl Page {
     }
 
     /// A paragraph behind a margin with something in it.
-    pub fn hang(&mut self, lead: impl Into<Text>, margin: usize, text: impl Into<Text>) -> &mut Self {
-        self.blocks.push(Block::Para { lead: lead.into(), margin, text: text.into() });
+    pub fn hang(
+        &mut self,
+        lead: impl Into<Text>,
+        margin: usize,
+        text: impl Into<Text>,
+    ) -> &mut Self {
+        self.blocks.push(Block::Para {
+            lead: lead.into(),
+            margin,
+            text: text.into(),
+        });
         self
     }
 
@@ -178,6 +194,11 @@ impl Page {
     pub fn table(&mut self, margin: usize, table: Table) -> &mut Self {
         self.blocks.push(Block::Table(margin, table));
         self
+    }
+
+    /// A paragraph with something in front of it that keeps its place.
+    pub fn item(&mut self, text: impl Into<Text>) -> &mut Self {
+        self.hang("  -", 4, text)
     }
 
     /// An empty line, unless one is there already or nothing is.
@@ -209,7 +230,7 @@ impl Page {
                     let room = width.saturating_sub(*margin).max(12);
                     for (row, line) in wrap(text, room).iter().enumerate() {
                         let lead = if row == 0 { lead.clone() } else { Text::new() };
-                        put(&mut out, &pad(lead, *margin), line, style);
+                        put(&mut out, &self::margin(lead, *margin), line, style);
                     }
                 }
             }
@@ -223,14 +244,15 @@ fn put(out: &mut String, lead: &Text, line: &Text, style: &Style) {
     let mut all = lead.clone();
     all.0.extend(line.0.iter().cloned());
     while let Some(last) = all.0.last_mut() {
-        last.text.truncate(last.text.trim_end_matches(' ').len());
+        last.text
+            .truncate(last.text.trim_end_matches([' ', FIRM]).len());
         if last.text.is_empty() {
             all.0.pop();
         } else {
             break;
         }
     }
-    out.push_str(&all.render(style));
+    out.push_str(&all.render(style).replace(FIRM, " "));
     out.push('\n');
 }
 
@@ -245,11 +267,17 @@ mod tests {
         page.blank().blank();
         page.line("end ");
         let text = page.render(24, &Style::plain());
-        assert_eq!(text, "NEXT    one two three\n        four five six\n        seven\n\nend\n");
+        assert_eq!(
+            text,
+            "NEXT    one two three\n        four five six\n        seven\n\nend\n"
+        );
     }
 
     #[test]
     fn nothing_from_outside_reaches_the_terminal_as_a_control() {
-        assert_eq!(Text::from("a\u{1b}[31mb\u{202e}c\nd").bare(), "a\u{fffd}[31mb\u{fffd}c d");
+        assert_eq!(
+            Text::from("a\u{1b}[31mb\u{202e}c\nd").bare(),
+            "a\u{fffd}[31mb\u{fffd}c d"
+        );
     }
 }

@@ -28,7 +28,11 @@ pub struct Paper<W> {
 impl<W: Write> Paper<W> {
     /// A stream with its width and its colours.
     pub fn new(out: W, width: usize, style: Style) -> Self {
-        Self { out, width: width.max(NARROWEST), style }
+        Self {
+            out,
+            width: width.max(NARROWEST),
+            style,
+        }
     }
 
     /// Writes a page and sends it off.
@@ -36,7 +40,8 @@ impl<W: Write> Paper<W> {
     /// # Errors
     /// The stream takes no more.
     pub fn show(&mut self, page: &Page) -> io::Result<()> {
-        self.out.write_all(page.render(self.width, &self.style).as_bytes())?;
+        self.out
+            .write_all(page.render(self.width, &self.style).as_bytes())?;
         self.out.flush()
     }
 
@@ -58,7 +63,11 @@ impl<W: Write> Paper<W> {
 /// Columns of a page: what the terminal says, else `COLUMNS`, else 80.
 pub fn columns(terminal: Option<usize>, variable: Option<&str>) -> usize {
     let stated = variable.and_then(|text| text.trim().parse().ok());
-    terminal.or(stated).filter(|width| *width > 0).unwrap_or(80).clamp(NARROWEST, 120)
+    terminal
+        .or(stated)
+        .filter(|width| *width > 0)
+        .unwrap_or(80)
+        .clamp(NARROWEST, 120)
 }
 
 #[cfg(test)]

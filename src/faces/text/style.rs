@@ -25,7 +25,9 @@ impl Style {
     /// terminal that calls itself `dumb` gets none.
     pub fn decide(is_terminal: bool, no_color: Option<&str>, term: Option<&str>) -> Self {
         let refused = no_color.is_some_and(|value| !value.is_empty());
-        Self { colour: is_terminal && !refused && term != Some("dumb") }
+        Self {
+            colour: is_terminal && !refused && term != Some("dumb"),
+        }
     }
 
     /// Whether colour is used.
@@ -69,7 +71,10 @@ mod tests {
     #[test]
     fn colour_adds_nothing_but_colour() {
         let painted = Style::colour().paint(Meaning::Danger, "60 V");
-        assert!(painted.starts_with("\u{1b}[") && painted.contains("60 V"), "{painted:?}");
+        assert!(
+            painted.starts_with("\u{1b}[") && painted.contains("60 V"),
+            "{painted:?}"
+        );
         assert_eq!(Style::plain().paint(Meaning::Danger, "60 V"), "60 V");
     }
 }

@@ -9,15 +9,26 @@ pub fn width_of(text: &Text) -> usize {
     text.0.iter().map(|piece| piece.text.width()).sum()
 }
 
-/// The text with blanks up to a width; longer text keeps one blank behind it.
+/// A blank at which no line is broken; it is shown as a blank.
+pub const FIRM: char = '\u{a0}';
+
+/// The text with blanks up to a width.
 pub fn pad(mut text: Text, width: usize) -> Text {
-    let have = width_of(&text);
-    if have < width {
-        text.push(Default::default(), " ".repeat(width - have));
-    } else if have > 0 && width > 0 {
-        text.push(Default::default(), " ");
-    }
+    text.push(
+        Default::default(),
+        " ".repeat(width.saturating_sub(width_of(&text))),
+    );
     text
+}
+
+/// What stands in a margin: blanks up to the text, at least one.
+pub fn margin(lead: Text, width: usize) -> Text {
+    let least = if lead.is_empty() {
+        0
+    } else {
+        width_of(&lead) + 1
+    };
+    pad(lead, width.max(least))
 }
 
 /// A word: pieces that no blank parts, and whether a blank stood before it.
@@ -37,13 +48,19 @@ fn words(text: &Text) -> Vec<Word> {
             if part.is_empty() {
                 continue;
             }
-            let own = Piece { text: part.to_owned(), meaning: piece.meaning };
+            let own = Piece {
+                text: part.to_owned(),
+                meaning: piece.meaning,
+            };
             match all.last_mut().filter(|_| glued) {
                 Some(word) => {
                     word.width += part.width();
                     word.pieces.push(own);
                 }
-                None => all.push(Word { width: part.width(), pieces: vec![own] }),
+                None => all.push(Word {
+                    width: part.width(),
+                    pieces: vec![own],
+                }),
             }
             glued = true;
         }
@@ -56,18 +73,34 @@ fn cut(word: Word, room: usize) -> Vec<Word> {
     if word.width <= room {
         return vec![word];
     }
-    let mut parts = vec![Word { pieces: Vec::new(), width: 0 }];
+    let mut parts = vec![Word {
+        pieces: Vec::new(),
+        width: 0,
+    }];
     for piece in word.pieces {
         for c in piece.text.chars() {
             let wide = c.width().unwrap_or(0);
-            if parts.last().is_some_and(|part| part.width + wide > room && part.width > 0) {
-                parts.push(Word { pieces: Vec::new(), width: 0 });
+            if parts
+                .last()
+                .is_some_and(|part| part.width + wide > room && part.width > 0)
+            {
+                parts.push(Word {
+                    pieces: Vec::new(),
+                    width: 0,
+                });
             }
             if let Some(part) = parts.last_mut() {
                 part.width += wide;
-                match part.pieces.last_mut().filter(|p| p.meaning == piece.meaning) {
+                match part
+                    .pieces
+                    .last_mut()
+                    .filter(|p| p.meaning == piece.meaning)
+                {
                     Some(last) => last.text.push(c),
-                    None => part.pieces.push(Piece { text: c.to_string(), meaning: piece.meaning }),
+                    None => part.pieces.push(Piece {
+                        text: c.to_string(),
+                        meaning: piece.meaning,
+                    }),
                 }
             }
         }
@@ -96,7 +129,11 @@ pub fn wrap(text: &Text, room: usize) -> Vec<Text> {
         }
         used += word.width;
         for piece in word.pieces {
-            match line.0.last_mut().filter(|last| last.meaning == piece.meaning) {
+            match line
+                .0
+                .last_mut()
+                .filter(|last| last.meaning == piece.meaning)
+            {
                 Some(last) => last.text.push_str(&piece.text),
                 None => line.0.push(piece),
             }
@@ -111,12 +148,18 @@ mod tests {
     use super::*;
 
     fn lines(text: &str, room: usize) -> Vec<String> {
-        wrap(&Text::from(text), room).iter().map(Text::bare).collect()
+        wrap(&Text::from(text), room)
+            .iter()
+            .map(Text::bare)
+            .collect()
     }
 
     #[test]
     fn words_stay_whole_and_a_longer_one_is_cut() {
-        assert_eq!(lines("earth bar to a stake", 9), ["earth bar", "to a", "stake"]);
+        assert_eq!(
+            lines("earth bar to a stake", 9),
+            ["earth bar", "to a", "stake"]
+        );
         assert_eq!(lines("abcdefgh ij", 3), ["abc", "def", "gh", "ij"]);
         assert_eq!(lines("", 10), [""]);
     }
@@ -129,7 +172,10 @@ mod tests {
 
     #[test]
     fn a_word_of_several_meanings_is_not_parted() {
-        let text = Text::new().plain("read (").with(Meaning::Value, "47 V").plain("), then");
+        let text = Text::new()
+            .plain("read (")
+            .with(Meaning::Value, "47 V")
+            .plain("), then");
         let shown: Vec<String> = wrap(&text, 9).iter().map(Text::bare).collect();
         assert_eq!(shown, ["read (47", "V), then"]);
     }
