@@ -115,11 +115,10 @@ pub fn log_probability(
 
 /// Log probability of a complaint under an unlisted cause.
 pub fn unlisted(model: &Model, complaint: &Complaint) -> f64 {
-    let place = match model.knowledge.symptom(&complaint.kind) {
-        Some(row) => anywhere(row, complaint),
-        None => 1.0,
-    };
-    ln((model.knowledge.beside.unlisted_complaint * place).max(1e-9))
+    match model.knowledge.symptom(&complaint.kind) {
+        Some(row) => ln((row.unlisted * anywhere(row, complaint)).max(1e-9)),
+        None => 0.0,
+    }
 }
 
 /// Factor of the place told where the cause may be anywhere.

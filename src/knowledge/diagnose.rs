@@ -5,6 +5,7 @@ use std::collections::BTreeMap;
 use super::braces::shape;
 use super::parse::{Located, Parsed};
 use super::procedure::Hookup;
+use super::records::SymptomRow;
 use super::validate::{Issues, refers, tables};
 use super::validate_checks::{check, symptom};
 use super::validate_faults::fault;
@@ -259,9 +260,16 @@ fn other_references(parsed: &Parsed<'_>, out: &mut Issues) {
             );
         }
     }
-    let sum: f64 = parsed.symptoms.iter().map(|s| s.record.nothing_wrong).sum();
-    if let Some(row) = parsed.symptoms.last().filter(|_| sum > 1.0 + 1e-9) {
-        let what = format!("the complaints' `nothing_wrong` sum to {sum:.3}");
-        out.push(row.issue("nothing_wrong", what, "lower them to 1 at most"));
+    type Share = fn(&SymptomRow) -> f64;
+    let shares = [
+        ("nothing_wrong", (|s| s.nothing_wrong) as Share),
+        ("unlisted", |s| s.unlisted),
+    ];
+    for (name, share) in shares {
+        let sum: f64 = parsed.symptoms.iter().map(|s| share(&s.record)).sum();
+        if let Some(row) = parsed.symptoms.last().filter(|_| sum > 1.0 + 1e-9) {
+            let what = format!("the complaints' `{name}` sum to {sum:.3}");
+            out.push(row.issue(name, what, "lower them to 1 at most"));
+        }
     }
 }

@@ -526,6 +526,8 @@ pub struct SymptomRow {
     pub elsewhere: Option<f64>,
     /// P(complaint of this kind | nothing wrong now, and there was a call).
     pub nothing_wrong: f64,
+    /// P(complaint of this kind | an unlisted cause, and there was a call).
+    pub unlisted: f64,
 }
 
 /// A warning or make-safe order.
@@ -738,8 +740,6 @@ pub struct Beside {
     pub nothing_wrong: f64,
     /// Calls whose cause no kind describes.
     pub unlisted: f64,
-    /// P(a given complaint | an unlisted cause): the same for every complaint.
-    pub unlisted_complaint: f64,
 }
 
 /// Costs that decide when to stop (minutes).

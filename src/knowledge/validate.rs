@@ -378,14 +378,6 @@ fn singles(parsed: &Parsed<'_>, out: &mut Issues) {
         let r = &row.record;
         within(row, "nothing_wrong", r.nothing_wrong, 0.0, 1.0, out);
         within(row, "unlisted", r.unlisted, 1e-6, 1.0, out);
-        within(
-            row,
-            "unlisted_complaint",
-            r.unlisted_complaint,
-            1e-6,
-            1.0,
-            out,
-        );
     }
 }
 

@@ -74,6 +74,7 @@ pub fn symptom(row: &Located<'_, SymptomRow>, out: &mut Issues) {
     each(row, "at", &s.at, words::PLACES, out);
     within(row, "floor", s.floor, 0.0, 1.0, out);
     within(row, "nothing_wrong", s.nothing_wrong, 0.0, 1.0, out);
+    within(row, "unlisted", s.unlisted, 1e-9, 1.0, out);
     if let Some(elsewhere) = s.elsewhere {
         within(row, "elsewhere", elsewhere, 1e-6, 1.0, out);
     }

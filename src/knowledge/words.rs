@@ -60,7 +60,10 @@ pub const EACH: &[Meaning] = &[
         "last-point",
         "of each circuit the point farthest from its board",
     ),
-    ("joint", "every point, every circuit's end in its board, every submain's end"),
+    (
+        "joint",
+        "every point, every circuit's end in its board, every submain's end",
+    ),
     ("inner-point", "every point from which another goes on"),
     (
         "split",
@@ -157,7 +160,10 @@ pub const ID_NAMES: &[Meaning] = &[
     ),
     ("circuit", "the place's circuit"),
     ("to-circuit", "the circuit of `to`"),
-    ("circuits", "the circuits of the place and of `to`, in the file's order"),
+    (
+        "circuits",
+        "the circuits of the place and of `to`, in the file's order",
+    ),
     (
         "board",
         "the place's board; of a bond, the main board; of a sub-board, the one that feeds it",
@@ -203,7 +209,10 @@ pub const TEXT_NAMES: &[Meaning] = &[
     ),
     ("at-name", "the place as a person calls it"),
     ("to-name", "the other place as a person calls it"),
-    ("conductor-name", "the fault's conductor in the site's words"),
+    (
+        "conductor-name",
+        "the fault's conductor in the site's words",
+    ),
     ("board-name", "the place's board as a person calls it"),
     ("circuit-name", "the place's circuit as a person calls it"),
 ];
