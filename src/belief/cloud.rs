@@ -8,14 +8,14 @@ use std::sync::Arc;
 
 use super::model::Model;
 use super::reading::{Group, Reading};
-use super::sight::{Shown, core, slip, together};
+use super::sight::{Shown, core, slip, together, unit_coordinate};
 use super::world::World;
 use crate::faults::Telltale;
 use crate::knowledge::{ErrorRow, Hookup};
 use crate::network::params::at_normal;
 use crate::network::{Outcome, Probe, QuickSolver, Switching, Unnamed, Values, read};
 use crate::numeric::rng::{Stream, stratified};
-use crate::numeric::special::{ln, log_sum_exp, normal_quantile};
+use crate::numeric::special::{ln, log_sum_exp, normal_quantile, pow};
 use crate::numeric::stats::{effective_size, normalise};
 use crate::quantity::{Parsed, ParsedValue, Word};
 
@@ -330,21 +330,26 @@ fn add_reading(
         None
     };
     let Some(at) = at else { return };
+    let mut seen = Vec::with_capacity(cloud.n());
     for i in 0..cloud.n() {
         world.set(cloud.own(i));
         let values = Values {
             theta: cloud.draws.theta(i),
             common: &model.network.common,
         };
-        let seen = shown(&QuickSolver::new(&world.wiring, values), &at);
+        let own = shown(&QuickSolver::new(&world.wiring, values), &at);
         let clear = at_sound
             .as_ref()
             .map(|a| shown(&QuickSolver::new(&sound.wiring, values), a));
+        seen.push((own, clear));
+    }
+    let smooth = bandwidth(row, &seen, &cloud.weights());
+    for (i, &(seen, clear)) in seen.iter().enumerate() {
         for (soften, pick) in [(1.0, false), (SOFT, true)] {
-            let mut c = core(row, seen, &reading.parsed, soften);
+            let mut c = core(row, seen, &reading.parsed, soften, smooth);
             if let Some(clear) = clear {
                 // The fault shows in this reading, or it does not.
-                let hidden = core(row, clear, &reading.parsed, soften);
+                let hidden = core(row, clear, &reading.parsed, soften, smooth);
                 c = log_sum_exp(&[
                     ln(shows.max(1e-9)) + c,
                     ln((1.0 - shows).max(1e-9)) + hidden,
@@ -360,6 +365,30 @@ fn add_reading(
             }
         }
     }
+}
+
+/// Smoothing of a handful of weighted draws, in the coordinate of unit error: a kernel estimate in place of
+/// spikes (regularised particles, Musso et al. 2001; Silverman's rule at half, for spreads of several modes).
+fn bandwidth(row: &ErrorRow, seen: &[(Shown, Option<Shown>)], weights: &[f64]) -> f64 {
+    let mut sums = (0.0, 0.0, 0.0, 0.0);
+    for ((shown, _), w) in seen.iter().zip(weights) {
+        if let Outcome::Number(y) = shown.outcome
+            && y < row.over
+        {
+            let u = unit_coordinate(row, y);
+            sums.0 += w;
+            sums.1 += w * u;
+            sums.2 += w * u * u;
+            sums.3 += w * w;
+        }
+    }
+    if sums.0 <= 0.0 {
+        return 0.0;
+    }
+    let mean = sums.1 / sums.0;
+    let sd = (sums.2 / sums.0 - mean * mean).max(0.0).sqrt();
+    let draws = sums.0 * sums.0 / sums.3;
+    0.53 * sd * pow(draws.max(2.0), -0.2)
 }
 
 /// Widening of the spreads in the guide.

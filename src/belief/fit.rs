@@ -100,7 +100,7 @@ fn residual(t: &Target<'_>, seen: Shown) -> f64 {
     };
     let share = slip_share(
         t.row,
-        core(t.row, seen, t.parsed, 1.0),
+        core(t.row, seen, t.parsed, 1.0, 0.0),
         slip(t.row, seen, t.parsed, 1.0),
     );
     raw.clamp(-30.0, 30.0) * (1.0 - share).max(0.05).sqrt()
@@ -113,6 +113,7 @@ pub fn refit(
     sound: &World,
     cloud: &Cloud,
     groups: &[Group],
+    levers: &[usize],
     draws: usize,
     seed: u64,
 ) -> Cloud {
@@ -130,32 +131,17 @@ pub fn refit(
     start.extend(cloud.own(best).iter().copied());
     start.resize(params + own, 0.0);
     let mut problem = problem(model, worlds, groups, params);
-    let fixed =
-        |d: usize| d < params && matches!(model.network.params.specs[d].prior, Prior::Fixed { .. });
     let is_switch = |d: usize| {
         d < params && matches!(model.network.params.specs[d].prior, Prior::Switch { .. })
     };
     // Unmoved deviates rest at the prior's centre.
-    let mut z = start.clone();
-    let base = problem.residuals(&z);
+    let mut z = start;
     let mut active = Vec::new();
-    for d in 0..z.len() {
-        if fixed(d) || is_switch(d) {
-            continue;
-        }
-        let keep = z[d];
-        z[d] = keep + 0.25;
-        let moved = problem.residuals(&z);
-        z[d] = keep;
-        let most = moved
-            .iter()
-            .zip(&base)
-            .map(|(a, b)| (a - b).abs())
-            .fold(0.0, f64::max);
-        if most * 4.0 > 0.08 {
+    for (d, value) in z.iter_mut().enumerate() {
+        if d >= params || levers.contains(&d) {
             active.push(d);
-        } else {
-            z[d] = 0.0;
+        } else if !is_switch(d) {
+            *value = 0.0;
         }
     }
     let (mode, root) = gauss_newton(&mut problem, z, &active);
@@ -196,6 +182,48 @@ pub fn refit(
         }
     }
     fitted
+}
+
+/// Parameters that every earth fault leans on, whatever the sound installation shows.
+const ALWAYS: [&str; 5] = [
+    "supply.volts",
+    "supply.network_ohms",
+    "supply.network_earth_ohms",
+    "earthing.electrode_ohms",
+    "stake_ohms",
+];
+
+/// Parameters that move a group of readings at the sound installation, and those that always count.
+pub fn levers(model: &Model, worlds: &mut [World], group: &Group) -> Vec<usize> {
+    let specs = &model.network.params.specs;
+    let params = specs.len();
+    let moves = |d: usize| !matches!(specs[d].prior, Prior::Fixed { .. } | Prior::Switch { .. });
+    let mut out: Vec<usize> = ALWAYS
+        .iter()
+        .filter_map(|path| model.network.params.id(path))
+        .map(|id| id.0)
+        .filter(|&d| moves(d))
+        .collect();
+    let mut problem = problem(model, worlds, std::slice::from_ref(group), params);
+    if problem.targets.is_empty() {
+        return Vec::new();
+    }
+    let mut z = vec![0.0; params];
+    let base = problem.residuals(&z);
+    for d in (0..params).filter(|&d| moves(d)) {
+        z[d] = 0.5;
+        let moved = problem.residuals(&z);
+        z[d] = 0.0;
+        let most = moved
+            .iter()
+            .zip(&base)
+            .map(|(a, b)| (a - b).abs())
+            .fold(0.0, f64::max);
+        if most > 0.2 && !out.contains(&d) {
+            out.push(d);
+        }
+    }
+    out
 }
 
 fn problem<'a>(
@@ -256,7 +284,7 @@ fn gauss_newton(
         return (z, root);
     }
     let mut r = problem.residuals(&z);
-    for round in 0..5 {
+    for round in 0..4 {
         let m = r.len();
         let mut j = DMatrix::zeros(m, k);
         for (col, &d) in active.iter().enumerate() {
@@ -279,7 +307,7 @@ fn gauss_newton(
         if let Some(inverse) = chol.l().try_inverse() {
             root = inverse.transpose();
         }
-        if round == 4 {
+        if round == 3 {
             break;
         }
         let gradient = j.transpose() * &rv + &zv;

@@ -5,13 +5,13 @@ use rayon::prelude::*;
 use super::cloud::{BY_CHANCE, Cloud, aim, shown};
 use super::model::Model;
 use super::reading::Reading;
-use super::sight::{core, spread};
+use super::sight::{core, spread, unit_coordinate};
 use super::state::{Belief, Candidate, Cause};
 use super::world::World;
 use crate::checks::Check;
 use crate::knowledge::Hookup;
 use crate::network::{Outcome, QuickSolver, Values};
-use crate::numeric::special::{exp, ln, log_sum_exp, normal_cdf};
+use crate::numeric::special::{self, exp, ln, log_sum_exp, normal_cdf};
 use crate::numeric::stats::systematic;
 use crate::quantity::{Parsed, ParsedValue, Word};
 
@@ -45,9 +45,31 @@ pub struct ForecastTable {
 }
 
 /// Draws of a forecast.
-const FORECAST_DRAWS: usize = 24;
+const FORECAST_DRAWS: usize = 16;
 
 impl Forecast {
+    /// Smoothing of the draws' numbers, in the coordinate of unit error: half their spread. A handful of
+    /// draws is not a set of spikes, and spikes would tell bits that are not there (Silverman's rule, 1986:
+    /// 1.06 σ n^(−1/5), halved for spreads of several modes).
+    pub fn bandwidth(&self, row: &crate::knowledge::ErrorRow) -> f64 {
+        let mut sums = (0.0, 0.0, 0.0, 0.0);
+        for way in &self.ways {
+            if let Outcome::Number(y) = way.outcome {
+                let u = unit_coordinate(row, y);
+                sums.0 += way.weight;
+                sums.1 += way.weight * u;
+                sums.2 += way.weight * u * u;
+                sums.3 += 1.0;
+            }
+        }
+        if sums.0 <= 0.0 || sums.3 < 2.0 {
+            return 0.0;
+        }
+        let mean = sums.1 / sums.0;
+        let sd = (sums.2 / sums.0 - mean * mean).max(0.0).sqrt();
+        0.53 * sd * special::pow(sums.3, -0.2)
+    }
+
     /// Quantile of a numeric forecast, SI; `None` if words hold most of it.
     pub fn quantile(&self, at: f64) -> Option<f64> {
         let numbers: Vec<&Way> = self
@@ -118,7 +140,11 @@ fn of_candidate(model: &Model, c: &Candidate, sound: &World, checks: &[&Check]) 
         if pick == previous {
             for (f, faint) in out.iter_mut().zip(&faint) {
                 // A fault that comes and goes has two ways to each draw: shown, and not.
-                let of_one = if matches!(faint, Some((_, Some(_)))) { 2 } else { 1 };
+                let of_one = if matches!(faint, Some((_, Some(_)))) {
+                    2
+                } else {
+                    1
+                };
                 let first = f.ways.len().saturating_sub(of_one);
                 f.ways.extend_from_within(first..);
             }
@@ -255,14 +281,15 @@ impl Belief {
     /// least as far from what was expected is. Slips do not count.
     pub fn surprise(&self, reading: &Reading) -> f64 {
         let check = check_of(reading);
-        let table = self.forecasts(&[&check], 1e-3, 40);
+        let table = self.forecasts(&[&check], 1e-2, 24);
         let Some(row) = self.model().knowledge.error_of(&reading.hookup) else {
             return 1.0;
         };
         let mut tail = 0.0;
         for (f, p) in table.forecasts.first().into_iter().flatten().zip(&table.p) {
+            let smooth = f.bandwidth(row);
             for way in &f.ways {
-                tail += p * way.weight * tail_of(way, row, &reading.parsed);
+                tail += p * way.weight * tail_of(way, row, &reading.parsed, smooth);
             }
         }
         tail.clamp(0.0, 1.0)
@@ -271,7 +298,7 @@ impl Belief {
     /// Log likelihood of a reading under the mixture, for ranking alternatives of unit or range.
     pub fn log_mixture(&self, reading: &Reading) -> f64 {
         let check = check_of(reading);
-        let table = self.forecasts(&[&check], 1e-3, 40);
+        let table = self.forecasts(&[&check], 1e-2, 24);
         let Some(row) = self.model().knowledge.error_of(&reading.hookup) else {
             return 0.0;
         };
@@ -282,16 +309,22 @@ impl Belief {
                     outcome: way.outcome,
                     enclosed: 0.0,
                 };
-                terms
-                    .push(ln((p * way.weight).max(1e-300)) + core(row, seen, &reading.parsed, 1.0));
+                terms.push(
+                    ln((p * way.weight).max(1e-300)) + core(row, seen, &reading.parsed, 1.0, 0.0),
+                );
             }
         }
         log_sum_exp(&terms)
     }
 }
 
-fn tail_of(way: &Way, row: &crate::knowledge::ErrorRow, parsed: &Parsed) -> f64 {
-    let two_sided = |y: f64, mean: f64, sd: f64| 2.0 * normal_cdf(-((y - mean) / sd).abs());
+fn tail_of(way: &Way, row: &crate::knowledge::ErrorRow, parsed: &Parsed, smooth: f64) -> f64 {
+    let a = row.absolute.max(row.resolution / 12f64.sqrt()).max(1e-12);
+    let two_sided = |y: f64, mean: f64, sd: f64| {
+        let here = (a * a + (row.relative * mean) * (row.relative * mean)).sqrt();
+        let width = ((sd / here) * (sd / here) + smooth * smooth).sqrt();
+        2.0 * normal_cdf(-((unit_coordinate(row, y) - unit_coordinate(row, mean)) / width).abs())
+    };
     let wider = if parsed.rough { 4.0 } else { 1.0 };
     match (way.outcome, parsed.value) {
         (Outcome::Word(Word::Open), ParsedValue::Over { .. }) => 1.0,

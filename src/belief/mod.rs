@@ -7,11 +7,13 @@
 
 pub mod cloud;
 pub mod complaint;
+mod explain;
 pub mod fit;
 pub mod forecast;
 pub mod model;
 mod nearness;
 pub mod odds;
+mod pairs;
 pub mod reading;
 pub mod sight;
 pub mod state;

@@ -9,6 +9,22 @@ use crate::network::Outcome;
 use crate::numeric::special::{exp, ln, ln_normal_pdf, log_add_exp, normal_cdf};
 use crate::quantity::{Parsed, ParsedValue, Word};
 
+/// asinh by logarithms (Abramowitz & Stegun 4.6.20).
+fn asinh(x: f64) -> f64 {
+    if x < 0.0 {
+        -asinh(-x)
+    } else {
+        ln(x + (x * x + 1.0).sqrt())
+    }
+}
+
+/// The coordinate u = asinh(r·y/a)/r in which an instrument's error (σ² = a² + r²y²) has unit width.
+pub fn unit_coordinate(row: &ErrorRow, y: f64) -> f64 {
+    let a = row.absolute.max(row.resolution / 12f64.sqrt()).max(1e-12);
+    let r = row.relative.max(1e-4);
+    asinh(r * y / a) / r
+}
+
 /// A forecast with what its error needs.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Shown {
@@ -29,8 +45,9 @@ pub fn spread(row: &ErrorRow, mean: f64, enclosed: f64) -> f64 {
     parts.iter().map(|p| p * p).sum::<f64>().sqrt().max(1e-12)
 }
 
-/// Log density (or probability) of a reading that is no slip; `soften` multiplies the spread.
-pub fn core(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64) -> f64 {
+/// Log density (or probability) of a reading that is no slip; `soften` multiplies the spread, `smooth`
+/// (in the coordinate of unit error) is added to it: the bandwidth of a handful of draws.
+pub fn core(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64, smooth: f64) -> f64 {
     let soften = if parsed.rough { soften * 4.0 } else { soften };
     let mean = match shown.outcome {
         Outcome::Word(word) => {
@@ -40,7 +57,9 @@ pub fn core(row: &ErrorRow, shown: Shown, parsed: &Parsed, soften: f64) -> f64 {
         Outcome::Number(mean) => mean,
     };
     let sd = if mean.is_finite() {
-        spread(row, mean, shown.enclosed) * soften
+        let own = spread(row, mean, shown.enclosed) * soften;
+        let unit = spread(row, mean, 0.0) * smooth;
+        (own * own + unit * unit).sqrt()
     } else {
         1.0
     };

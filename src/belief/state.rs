@@ -6,7 +6,7 @@ use rayon::prelude::*;
 
 use super::cloud::{Cloud, Draws, likelihoods};
 use super::complaint::{Complaint, log_probability, unlisted as unlisted_complaint};
-use super::fit::refit;
+use super::fit::{levers, refit};
 use super::model::Model;
 use super::odds::posterior;
 use super::reading::{Group, Reading};
@@ -18,13 +18,15 @@ use crate::numeric::special::{exp, ln, log_sum_exp};
 /// Draws of the prior, common to all hypotheses.
 pub const DRAWS: usize = 64;
 /// Draws of a refit.
-const REFIT: usize = 96;
+const REFIT: usize = 64;
+/// Candidates refitted after a reading, at most: the likeliest by the softened guide.
+const REFITTED: usize = 8;
 /// Draws in which a complaint's signs are looked for.
 const SIGN_DRAWS: usize = 24;
 /// Log odds below the leader under which a hypothesis is not refitted.
-const FAR: f64 = 8.0;
-/// Pairs added after a reading, at most.
-const NEW_PAIRS: usize = 24;
+const FAR: f64 = 7.0;
+/// A second fault beside the cause, as a share of its presence among callers (guess).
+pub(super) const BESIDE: f64 = 0.03;
 
 /// What a hypothesis is.
 #[derive(Clone, Debug, PartialEq)]
@@ -45,12 +47,14 @@ pub struct Candidate {
     /// Its description; absent for nothing and unlisted.
     pub hypothesis: Option<Hypothesis>,
     /// Circuits before each repair and now: by epoch.
-    worlds: Vec<World>,
-    cloud: Cloud,
-    log_prior: f64,
-    log_complaint: f64,
+    pub(super) worlds: Vec<World>,
+    pub(super) cloud: Cloud,
+    pub(super) log_prior: f64,
+    pub(super) log_complaint: f64,
     /// Whether the draws were ever refitted.
-    fitted: bool,
+    pub(super) fitted: bool,
+    /// Whether it moves each group of readings off the sound installation's.
+    pub(super) moved: Vec<bool>,
 }
 
 impl Candidate {
@@ -106,19 +110,23 @@ pub struct Odds {
 /// The belief of a visit.
 #[derive(Clone, Debug)]
 pub struct Belief {
-    model: Arc<Model>,
-    seed: u64,
-    draws: Arc<Draws>,
-    candidates: Vec<Candidate>,
-    unlisted: Unlisted,
-    groups: Vec<Group>,
-    complaints: Vec<Complaint>,
+    pub(super) model: Arc<Model>,
+    pub(super) seed: u64,
+    pub(super) draws: Arc<Draws>,
+    pub(super) candidates: Vec<Candidate>,
+    pub(super) unlisted: Unlisted,
+    pub(super) groups: Vec<Group>,
+    pub(super) complaints: Vec<Complaint>,
     /// Faults known to have been there and repaired, by epoch.
-    repaired: Vec<Vec<usize>>,
+    pub(super) repaired: Vec<Vec<usize>>,
     /// Groups looked for and not found.
-    absent: Vec<(u64, String)>,
-    not_examined: f64,
+    pub(super) absent: Vec<(u64, String)>,
+    pub(super) not_examined: f64,
     odds: Odds,
+    /// Log likelihoods of each group under the sound installation's draws of the prior.
+    pub(super) reference: Vec<Vec<f64>>,
+    /// Parameters that move each group of readings at the sound installation.
+    pub(super) levers: Vec<Vec<usize>>,
 }
 
 impl Belief {
@@ -137,6 +145,8 @@ impl Belief {
             absent: Vec::new(),
             not_examined: 0.0,
             odds: Odds::default(),
+            reference: Vec::new(),
+            levers: Vec::new(),
             model,
         };
         belief.lay_out();
@@ -212,7 +222,7 @@ impl Belief {
     }
 
     /// A candidate of known (repaired) singles and new ones.
-    fn candidate(&self, cause: Cause) -> Option<Candidate> {
+    pub(super) fn candidate(&self, cause: Cause) -> Option<Candidate> {
         let known = self.known();
         let own: Vec<usize> = match &cause {
             Cause::Faults(list) => list.clone(),
@@ -230,7 +240,8 @@ impl Belief {
                     .iter()
                     .map(|&s| ln(self.model.space.singles[s].prior.max(1e-300)))
                     .sum();
-                product
+                // Presence is a share of calls; beside another cause a fault is there more seldom.
+                product + ln(BESIDE) * (list.len().saturating_sub(1)) as f64
             }
         };
         // After a repair that was found, nothing more being wrong is the usual case.
@@ -248,6 +259,7 @@ impl Belief {
             log_prior,
             log_complaint: 0.0,
             fitted: false,
+            moved: Vec::new(),
         })
     }
 
@@ -332,6 +344,8 @@ impl Belief {
     fn rebuild(&mut self) {
         self.lay_out();
         self.unlisted.groups.clear();
+        self.reference.clear();
+        self.levers.clear();
         self.not_examined = 0.0;
         self.hear();
         for index in 0..self.groups.len() {
@@ -345,19 +359,33 @@ impl Belief {
         let model = &self.model;
         let group = &self.groups[index];
         let sound = World::sound(model);
+        let plain = Cloud::prior(self.draws.clone(), &sound, self.seed);
+        let mut epochs = vec![sound.clone(); self.repaired.len() + 1];
+        let (reference, _) = likelihoods(model, &mut epochs, &sound, &plain, group);
+        let levers = levers(model, &mut epochs, group);
         self.candidates.par_iter_mut().for_each(|c| {
             if c.cause == Cause::Unlisted {
                 return;
             }
             let (l, s) = likelihoods(model, &mut c.worlds, &sound, &c.cloud, group);
+            let moved = c.fitted || l.iter().zip(&reference).any(|(x, y)| (x - y).abs() > 0.1);
             if index < c.cloud.groups.len() {
                 c.cloud.groups[index] = l;
                 c.cloud.soft[index] = s;
+                c.moved[index] = moved;
             } else {
                 c.cloud.groups.push(l);
                 c.cloud.soft.push(s);
+                c.moved.push(moved);
             }
         });
+        if index < self.reference.len() {
+            self.reference[index] = reference;
+            self.levers[index] = levers;
+        } else {
+            self.reference.push(reference);
+            self.levers.push(levers);
+        }
         self.unlisted.take(model, &self.draws, group, index);
     }
 
@@ -371,7 +399,7 @@ impl Belief {
         }
     }
 
-    fn log_joint(&self, c: &Candidate) -> f64 {
+    pub(super) fn log_joint(&self, c: &Candidate) -> f64 {
         let evidence = if c.cause == Cause::Unlisted {
             self.unlisted.log_evidence()
         } else {
@@ -381,7 +409,7 @@ impl Belief {
     }
 
     /// A look that did not find a fault leaves little of it.
-    fn log_absent(&self, c: &Candidate) -> f64 {
+    pub(super) fn log_absent(&self, c: &Candidate) -> f64 {
         let misses = self
             .absent
             .iter()
@@ -405,11 +433,16 @@ impl Belief {
         }
         let potentials: Vec<f64> = self.candidates.iter().map(|c| self.potential(c)).collect();
         let best = potentials.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        let chosen: Vec<usize> = (0..self.candidates.len())
+        let mut chosen: Vec<usize> = (0..self.candidates.len())
             .filter(|&i| potentials[i] > best - FAR && self.candidates[i].cloud.effective() < 24.0)
             .collect();
+        chosen.sort_by(|&a, &b| potentials[b].total_cmp(&potentials[a]).then(a.cmp(&b)));
+        chosen.truncate(REFITTED);
         let (model, groups, seed) = (&self.model, &self.groups, self.seed);
         let sound = World::sound(model);
+        let mut levers: Vec<usize> = self.levers.iter().flatten().copied().collect();
+        levers.sort_unstable();
+        levers.dedup();
         let fitted: Vec<(usize, Cloud)> = chosen
             .into_par_iter()
             .map(|i| {
@@ -417,7 +450,16 @@ impl Belief {
                 let mut worlds = c.worlds.clone();
                 (
                     i,
-                    refit(model, &mut worlds, &sound, &c.cloud, groups, REFIT, seed),
+                    refit(
+                        model,
+                        &mut worlds,
+                        &sound,
+                        &c.cloud,
+                        groups,
+                        &levers,
+                        REFIT,
+                        seed,
+                    ),
                 )
             })
             .collect();
@@ -428,156 +470,6 @@ impl Belief {
                 c.fitted = true;
             }
         }
-    }
-
-    /// Adds pairs whose bound may reach the odds; true if any was added.
-    fn add_pairs(&mut self) -> bool {
-        let bounds = self.pair_bounds();
-        let total = log_sum_exp(
-            &self
-                .candidates
-                .iter()
-                .map(|c| self.log_joint(c))
-                .collect::<Vec<_>>(),
-        );
-        let mut fresh: Vec<(f64, Vec<usize>)> = bounds
-            .into_iter()
-            .filter(|(_, pair)| {
-                !self
-                    .candidates
-                    .iter()
-                    .any(|c| c.cause == Cause::Faults(pair.clone()))
-            })
-            .collect();
-        fresh.sort_by(|a, b| b.0.total_cmp(&a.0).then_with(|| a.1.cmp(&b.1)));
-        let worth = fresh
-            .iter()
-            .take_while(|(b, _)| *b > total + ln(1e-3))
-            .count()
-            .min(NEW_PAIRS);
-        let rest: Vec<f64> = fresh[worth..].iter().map(|f| f.0).collect();
-        let left = log_sum_exp(&rest);
-        self.not_examined = if left.is_finite() {
-            exp(left - log_sum_exp(&[left, total]))
-        } else {
-            0.0
-        };
-        let chosen: Vec<Vec<usize>> = fresh.into_iter().take(worth).map(|f| f.1).collect();
-        if chosen.is_empty() {
-            return false;
-        }
-        let this = &*self;
-        let sound = World::sound(&this.model);
-        let made: Vec<Candidate> = chosen
-            .into_par_iter()
-            .filter_map(|pair| {
-                let mut c = this.candidate(Cause::Faults(pair))?;
-                c.hear(
-                    &this.model,
-                    &this.complaints,
-                    &this.draws,
-                    !this.repaired.is_empty(),
-                );
-                for group in &this.groups {
-                    let (l, s) = likelihoods(&this.model, &mut c.worlds, &sound, &c.cloud, group);
-                    c.cloud.groups.push(l);
-                    c.cloud.soft.push(s);
-                }
-                Some(c)
-            })
-            .collect();
-        let any = !made.is_empty();
-        self.candidates.extend(made);
-        any
-    }
-
-    /// Upper estimates of the log joint of every pair that moves a reading: of each reading, what
-    /// either fault alone explains at best, or anything at all where both move it.
-    fn pair_bounds(&self) -> Vec<(f64, Vec<usize>)> {
-        let groups = self.groups.len();
-        let Some(nothing) = self.candidates.first() else {
-            return Vec::new();
-        };
-        if groups == 0 || !self.repaired.is_empty() {
-            return Vec::new();
-        }
-        let best = |g: &[f64]| g.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-        let sound: Vec<f64> = nothing.cloud.groups.iter().map(|g| best(g)).collect();
-        struct Single {
-            index: usize,
-            prior: f64,
-            complaint: f64,
-            best: Vec<f64>,
-            moved: Vec<bool>,
-        }
-        let singles: Vec<Single> = self
-            .candidates
-            .iter()
-            .filter_map(|c| match &c.cause {
-                Cause::Faults(list) if list.len() == 1 => {
-                    let tops: Vec<f64> = c.cloud.groups.iter().map(|g| best(g)).collect();
-                    let moved: Vec<bool> = c
-                        .cloud
-                        .groups
-                        .iter()
-                        .zip(&nothing.cloud.groups)
-                        .map(|(a, b)| {
-                            c.fitted
-                                || nothing.fitted
-                                || a.iter().zip(b).any(|(x, y)| (x - y).abs() > 0.1)
-                        })
-                        .collect();
-                    Some(Single {
-                        index: list[0],
-                        prior: c.log_prior,
-                        complaint: c.log_complaint,
-                        best: tops,
-                        moved,
-                    })
-                }
-                _ => None,
-            })
-            .collect();
-        let saturated: Vec<f64> = (0..groups)
-            .map(|g| singles.iter().map(|s| s.best[g]).fold(sound[g], f64::max))
-            .collect();
-        let floor = log_sum_exp(
-            &self
-                .candidates
-                .iter()
-                .map(|c| self.log_joint(c))
-                .collect::<Vec<_>>(),
-        ) + ln(1e-7);
-        let mut out = Vec::new();
-        for (i, a) in singles.iter().enumerate() {
-            if !a.moved.iter().any(|m| *m) {
-                continue;
-            }
-            for b in &singles[i + 1..] {
-                if !b.moved.iter().any(|m| *m) {
-                    continue;
-                }
-                let complaint = log_sum_exp(&[a.complaint, b.complaint]).min(0.0);
-                let mut bound = a.prior + b.prior + complaint;
-                if bound < floor - 60.0 {
-                    continue;
-                }
-                for g in 0..groups {
-                    bound += match (a.moved[g], b.moved[g]) {
-                        (true, true) => a.best[g]
-                            .max(b.best[g])
-                            .max(0.5 * (saturated[g] + a.best[g].max(b.best[g]))),
-                        (true, false) => a.best[g],
-                        (false, true) => b.best[g],
-                        (false, false) => sound[g],
-                    };
-                }
-                if bound > floor && self.model.space.compatible(a.index, b.index) {
-                    out.push((bound, vec![a.index.min(b.index), a.index.max(b.index)]));
-                }
-            }
-        }
-        out
     }
 
     /// Probabilities from evidence.
@@ -610,95 +502,16 @@ impl Belief {
         odds.groups = groups;
         self.odds = odds;
     }
-
-    /// For a candidate, how likely each group of readings is a slip: last entry, test, place, probability.
-    pub fn slips(&self, candidate: usize) -> Vec<(u64, String, String, f64)> {
-        let c = &self.candidates[candidate];
-        let weights = c.cloud.weights();
-        let mut out = Vec::new();
-        for (g, group) in self.groups.iter().enumerate() {
-            let (Some(last), Some(lik)) = (group.readings.last(), c.cloud.groups.get(g)) else {
-                continue;
-            };
-            let Some(row) = self.model.knowledge.error_of(&last.hookup) else {
-                continue;
-            };
-            // Of the mixture ln[(1−ε)c + εs], the slip part is at least ε·(gross density).
-            let floor: f64 = group
-                .readings
-                .iter()
-                .map(|r| ln(row.slip.max(1e-9)) + super::sight::gross(row, &r.parsed))
-                .sum();
-            let share: f64 = weights
-                .iter()
-                .zip(lik)
-                .map(|(w, l)| w * exp((floor - l).min(0.0)))
-                .sum();
-            out.push((last.entry, last.test.clone(), last.at.clone(), share));
-        }
-        out
-    }
-
-    /// Whether a group leads still when any one group of readings is left out.
-    pub fn survives_any_one_left_out(&self, group: &str) -> bool {
-        (0..self.groups.len()).all(|g| {
-            let mut mass: Vec<(&str, f64)> = Vec::new();
-            for c in &self.candidates {
-                let base = c.log_prior + c.log_complaint + self.log_absent(c);
-                let evidence = if c.cause == Cause::Unlisted {
-                    self.unlisted.log_evidence_without(g)
-                } else {
-                    c.cloud.log_evidence_without(g)
-                };
-                let joint = base + evidence;
-                match mass.iter_mut().find(|m| m.0 == c.group()) {
-                    Some(m) => m.1 = log_sum_exp(&[m.1, joint]),
-                    None => mass.push((c.group(), joint)),
-                }
-            }
-            mass.iter()
-                .max_by(|a, b| a.1.total_cmp(&b.1))
-                .is_some_and(|m| m.0 == group)
-        })
-    }
-
-    /// What each group of readings says for a candidate against the rest: last entry, test, place, bits.
-    pub fn evidence(&self, candidate: usize) -> Vec<(u64, String, String, f64)> {
-        let mut out = Vec::new();
-        for (g, group) in self.groups.iter().enumerate() {
-            let Some(last) = group.readings.last() else {
-                continue;
-            };
-            let without = |c: &Candidate| -> (f64, f64) {
-                if c.cause == Cause::Unlisted {
-                    return (
-                        self.unlisted.log_evidence(),
-                        self.unlisted.log_evidence_without(g),
-                    );
-                }
-                (c.cloud.log_evidence(), c.cloud.log_evidence_without(g))
-            };
-            let (mut ours, mut rest_full, mut rest_less) = (0.0, Vec::new(), Vec::new());
-            for (i, c) in self.candidates.iter().enumerate() {
-                let base = c.log_prior + c.log_complaint + self.log_absent(c);
-                let (full, less) = without(c);
-                if i == candidate {
-                    ours = full - less;
-                } else {
-                    rest_full.push(base + full);
-                    rest_less.push(base + less);
-                }
-            }
-            let bits = (ours - (log_sum_exp(&rest_full) - log_sum_exp(&rest_less)))
-                / std::f64::consts::LN_2;
-            out.push((last.entry, last.test.clone(), last.at.clone(), bits));
-        }
-        out
-    }
 }
 
 impl Candidate {
-    fn hear(&mut self, model: &Model, complaints: &[Complaint], draws: &Draws, after_repair: bool) {
+    pub(super) fn hear(
+        &mut self,
+        model: &Model,
+        complaints: &[Complaint],
+        draws: &Draws,
+        after_repair: bool,
+    ) {
         self.log_complaint = complaints
             .iter()
             .map(|complaint| match self.cause {

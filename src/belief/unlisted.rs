@@ -103,7 +103,7 @@ impl Unlisted {
                             Outcome::Word(_) => 1.0,
                         };
                         (
-                            core(row, seen, &reading.parsed, wide),
+                            core(row, seen, &reading.parsed, wide, 0.0),
                             slip(row, seen, &reading.parsed, wide),
                         )
                     }

@@ -199,7 +199,11 @@ pub fn link(circuit: &Circuit, index: usize, sw: &Switching, values: Values, kin
                 electronics,
                 part,
             } => {
-                let watts = theta[watts.0] * share;
+                let found = match branch.needs {
+                    Needs::On(i) if sw.on[i].is_none() => theta[common.as_found.0],
+                    _ => 1.0,
+                };
+                let watts = theta[watts.0] * share * found;
                 let pf = theta[power_factor.0].clamp(0.05, 1.0);
                 let tan = (1.0 - pf * pf).sqrt() / pf;
                 let g = watts / (230.0 * 230.0 * part);

@@ -302,6 +302,8 @@ pub struct Common {
     pub joint: ParamId,
     /// `contact_ohms`.
     pub contact: ParamId,
+    /// `loads_as_found`: a factor on what draws as found; `predict` takes it as one.
+    pub as_found: ParamId,
     /// `stake_ohms`: the stake's own resistance; `predict` takes it as zero.
     pub stake: ParamId,
 }
@@ -342,6 +344,8 @@ impl Common {
         let joint = plain("joint_ohms")?;
         let contact = plain("contact_ohms")?;
         let stake = plain("stake_ohms")?;
+        let as_found = plain("loads_as_found")?;
+        table.specs[as_found.0].point = 1.0;
         // Contract §6: `predict` is at 20 °C, without joint, contact or stake resistance.
         table.specs[celsius.0].point = 20.0;
         table.specs[length.0].point = 1.0;
@@ -358,6 +362,7 @@ impl Common {
             insulation,
             joint,
             contact,
+            as_found,
             stake,
         })
     }

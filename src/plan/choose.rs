@@ -13,9 +13,9 @@ use crate::knowledge::Setup;
 use crate::safety::Cleared;
 
 /// Hypotheses in a plan, at most.
-const MOST: usize = 48;
+const MOST: usize = 32;
 /// Odds outside the plan, at most.
-const TAIL: f64 = 2e-3;
+const TAIL: f64 = 5e-3;
 /// Pairs of checks looked at.
 const PAIRS: usize = 10;
 /// Bits a minute under which a check is not worth doing at all.

@@ -5,9 +5,10 @@
 //! have bins of their own. A share ε of readings is gross and falls anywhere.
 
 use crate::belief::Forecast;
+use crate::belief::sight::unit_coordinate;
 use crate::knowledge::ErrorRow;
 use crate::network::Outcome;
-use crate::numeric::special::{ln, normal_cdf};
+use crate::numeric::special::normal_cdf;
 use crate::quantity::Word;
 
 /// Width of a bin, in spreads.
@@ -20,22 +21,6 @@ const MOST: usize = 160;
 pub struct Table {
     /// Probabilities.
     pub p: Vec<Vec<f64>>,
-}
-
-/// asinh by logarithms (Abramowitz & Stegun 4.6.20).
-fn asinh(x: f64) -> f64 {
-    if x < 0.0 {
-        -asinh(-x)
-    } else {
-        ln(x + (x * x + 1.0).sqrt())
-    }
-}
-
-/// The coordinate of unit spread.
-pub fn unit_coordinate(row: &ErrorRow, y: f64) -> f64 {
-    let a = row.absolute.max(row.resolution / 12f64.sqrt()).max(1e-12);
-    let r = row.relative.max(1e-4);
-    asinh(r * y / a) / r
 }
 
 /// Bins the forecasts of one check under each hypothesis.
@@ -76,6 +61,7 @@ pub fn table(row: &ErrorRow, forecasts: &[&Forecast]) -> Table {
         .map(|f| {
             let mut line = vec![0.0; bins];
             let mut total = 0.0;
+            let smooth = f.bandwidth(row);
             for way in &f.ways {
                 total += way.weight;
                 match way.outcome {
@@ -87,7 +73,8 @@ pub fn table(row: &ErrorRow, forecasts: &[&Forecast]) -> Table {
                     Outcome::Number(y) => {
                         let u = unit_coordinate(row, y);
                         let here = (a * a + (row.relative * y) * (row.relative * y)).sqrt();
-                        let sd = (way.sd / here).clamp(0.3, 50.0);
+                        let own = (way.sd / here).clamp(0.3, 50.0);
+                        let sd = (own * own + smooth * smooth).sqrt();
                         let first = (((u - 4.0 * sd - low) / step).floor().max(0.0)) as usize;
                         let last = ((((u + 4.0 * sd - low) / step).ceil()) as usize).min(numbers);
                         let mut below = normal_cdf((low + first as f64 * step - u) / sd);

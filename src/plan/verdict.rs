@@ -95,7 +95,7 @@ pub fn verdict(belief: &Belief, plan: &Plan, cleared: &[Cleared<Check>]) -> Opti
     }
     if p < ACTABLE {
         // Sets that no available check can split go together; nothing left to tell them apart.
-        if !plan.advice.is_empty() {
+        if !plan.advice.is_empty() || p < 0.05 {
             return None;
         }
     }
