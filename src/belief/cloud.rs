@@ -37,7 +37,7 @@ impl Draws {
     pub fn from_z(model: &Model, z: Vec<f64>) -> Self {
         let specs = &model.network.params.specs;
         let width = specs.len();
-        let n = if width == 0 { 0 } else { z.len() / width };
+        let n = z.len().checked_div(width).unwrap_or(0);
         let theta = (0..n * width)
             .map(|i| at_normal(&specs[i % width].prior, z[i]))
             .collect();

@@ -4,6 +4,8 @@
 //! draws (ν = 6, scale × 1.1) for those, prior draws for the rest, switches drawn by what the last cloud
 //! says of them (design §4; methods: Laplace importance sampling). A poor effective sample size is mended
 //! once by refitting mean and covariance to the weighted draws (population Monte Carlo, Cappé et al. 2004).
+//!
+//! Long because the mode and the draws round it share one problem.
 
 use std::sync::Arc;
 
@@ -106,7 +108,8 @@ fn residual(t: &Target<'_>, seen: Shown) -> f64 {
     raw.clamp(-30.0, 30.0) * (1.0 - share).max(0.05).sqrt()
 }
 
-/// Refits a cloud to all readings. `draws` new draws; the seed and `salt` fix them.
+/// Refits a cloud to all readings over the parameters in `levers`; `draws` new draws, fixed by the seed.
+#[allow(clippy::too_many_arguments)]
 pub fn refit(
     model: &Model,
     worlds: &mut [World],

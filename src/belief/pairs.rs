@@ -128,14 +128,14 @@ impl Belief {
                 if bound < floor - 60.0 {
                     continue;
                 }
-                for g in 0..groups {
-                    bound += match (a.moved[g], b.moved[g]) {
+                bound += (0..groups)
+                    .map(|g| match (a.moved[g], b.moved[g]) {
                         (true, true) => a.best[g].max(b.best[g]),
                         (true, false) => a.best[g],
                         (false, true) => b.best[g],
                         (false, false) => sound[g],
-                    };
-                }
+                    })
+                    .sum::<f64>();
                 if bound > floor && self.model.space.compatible(a.index, b.index) {
                     out.push((bound, vec![a.index.min(b.index), a.index.max(b.index)]));
                 }

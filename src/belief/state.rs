@@ -1,4 +1,6 @@
 //! Odds over hypotheses, moved by complaints, readings and repairs.
+//!
+//! Long because it is the whole of what a reading, a complaint and a repair do to the odds.
 
 use std::sync::Arc;
 
@@ -13,7 +15,7 @@ use super::reading::{Group, Reading};
 use super::unlisted::Unlisted;
 use super::world::World;
 use crate::faults::{Fault, Hypothesis, NOTHING_WRONG, UNLISTED};
-use crate::numeric::special::{exp, ln, log_sum_exp};
+use crate::numeric::special::ln;
 
 /// Draws of the prior, common to all hypotheses.
 pub const DRAWS: usize = 64;

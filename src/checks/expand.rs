@@ -292,10 +292,10 @@ fn breakers(site: &Site, board: usize, rcd: Option<&str>) -> Vec<String> {
         if let Feed::Submain {
             board: from, rcd, ..
         } = &sub.feed
+            && *from == board
+            && on(rcd)
         {
-            if *from == board && on(rcd) {
-                out.push(format!("{}.breaker", sub.id));
-            }
+            out.push(format!("{}.breaker", sub.id));
         }
     }
     out

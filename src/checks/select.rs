@@ -71,8 +71,8 @@ pub(crate) fn instances(
                 .filter(|p| matches!(p.spot, Spot::Point(r) if goes_on(site, r)))
                 .collect(),
         ),
-        "last-point" => plain(per_circuit(site, |metres| farthest(metres))),
-        "split" => plain(per_circuit(site, |metres| nearest_middle(metres))),
+        "last-point" => plain(per_circuit(site, farthest)),
+        "split" => plain(per_circuit(site, nearest_middle)),
         "main-line" => main_lines(site, main_board()),
         "circuit-pair" => pairs(site),
         _ => return None,

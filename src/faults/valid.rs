@@ -4,7 +4,7 @@ use super::error::FaultError;
 use super::fault::Fault;
 use crate::knowledge::{FaultKind, fill, words};
 use crate::quantity::suggest::nearest;
-use crate::site::{Phase, Place, Site, Spot, name_of, place, places};
+use crate::site::{Phase, Place, Site, name_of, place, places};
 
 /// The place of a fault and the terminal or point of its `to`, both checked.
 ///

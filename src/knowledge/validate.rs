@@ -194,11 +194,11 @@ pub fn tables(parsed: &Parsed<'_>, out: &mut Issues) {
         if let Some(spread) = r.spread {
             within(row, "spread", spread, 1.0, 10.0, out);
         }
-        if let Some(system) = &r.system {
-            if !["TN-C-S", "TN-S", "TT"].contains(&system.as_str()) {
-                let what = format!("`{system}` is no supply system");
-                out.push(row.issue("system", what, "write TN-C-S, TN-S or TT"));
-            }
+        if let Some(system) = &r.system
+            && !["TN-C-S", "TN-S", "TT"].contains(&system.as_str())
+        {
+            let what = format!("`{system}` is no supply system");
+            out.push(row.issue("system", what, "write TN-C-S, TN-S or TT"));
         }
     }
     for row in &parsed.errors {
@@ -271,10 +271,10 @@ fn limit(row: &Located<'_, LimitRow>, out: &mut Issues) {
             "write least, most or word",
         ));
     }
-    if let (Some(least), Some(most)) = (r.least, r.most) {
-        if least > most {
-            out.push(row.issue("least", "least is above most", "exchange them"));
-        }
+    if let (Some(least), Some(most)) = (r.least, r.most)
+        && least > most
+    {
+        out.push(row.issue("least", "least is above most", "exchange them"));
     }
 }
 

@@ -1,4 +1,6 @@
 //! Site → circuit: nodes, branches and devices by the words of contract §1 and §2.
+//!
+//! Long because it is the site file's every key, once, in the order of the current.
 
 use std::collections::BTreeMap;
 

@@ -289,7 +289,7 @@ impl Circuit {
                 ..
             } = &mut d.kind
             {
-                if (index - branches) % 2 == 0 {
+                if (index - branches).is_multiple_of(2) {
                     *trip_override = Some(value);
                 } else {
                     *seconds_override = Some(value);

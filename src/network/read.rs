@@ -1,4 +1,6 @@
 //! What every instrument shows: hookups resolved on a circuit, and read through a solver.
+//!
+//! Long because every quantity of contract §3 is resolved and read here.
 
 use num_complex::Complex64;
 

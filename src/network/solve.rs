@@ -1,5 +1,7 @@
 //! Two ways to the same phasors: exact (every topology folded anew, ideal branches merged) and
 //! quick (one pattern for all switching states, further branches by a rank-one column).
+//!
+//! Long because both solvers answer the same questions and are read side by side.
 
 use num_complex::Complex64;
 

@@ -7,7 +7,6 @@ use super::command;
 use super::error::{ErrorCode, SessionError};
 use super::hidden::Hidden;
 use super::view::{AdviceView, MovedAnswer, VerdictView};
-use crate::safety::HoldPoint;
 
 /// One thing that happened on a simulated visit.
 #[derive(Clone, Debug)]
@@ -379,9 +378,4 @@ fn finish(
         })?;
     }
     Ok(())
-}
-
-/// Hold points of an advice that are still to be done.
-pub fn still_to_do(points: &[HoldPoint]) -> impl Iterator<Item = &HoldPoint> {
-    points.iter().filter(|p| !p.done)
 }

@@ -1,4 +1,5 @@
 //! The crate seen from outside: one binary, so that it links once.
+#![allow(clippy::unwrap_used)]
 
 mod architecture;
 mod bad_knowledge;
