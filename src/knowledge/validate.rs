@@ -115,7 +115,7 @@ pub fn prior<T>(row: &Located<'_, T>, path: &str, prior: &Prior, out: &mut Issue
             low,
             high,
         } => {
-            if !mean.is_finite() || !(*sd > 0.0 && sd.is_finite()) {
+            if !(mean.is_finite() && *sd > 0.0 && sd.is_finite()) {
                 bad(
                     "a normal prior needs a finite mean and sd above 0",
                     "correct mean or sd",
@@ -133,7 +133,7 @@ pub fn prior<T>(row: &Located<'_, T>, path: &str, prior: &Prior, out: &mut Issue
             low,
             high,
         } => {
-            if !(*median > 0.0 && median.is_finite()) || !(*gsd > 1.0 && gsd.is_finite()) {
+            if !(*median > 0.0 && median.is_finite() && *gsd > 1.0 && gsd.is_finite()) {
                 bad(
                     "a lognormal prior needs a median above 0 and gsd above 1",
                     "correct median or gsd",

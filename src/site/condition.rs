@@ -43,7 +43,7 @@ pub fn holds(word: &str, place: &Place, site: &Site, equipment: &[EquipmentRow])
             board(|b| !b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral()))
         }
         "solid-neutral" => {
-            board(|b| !(!b.mains.is_empty() && b.mains.iter().all(|m| m.switches_neutral())))
+            board(|b| b.mains.is_empty() || !b.mains.iter().all(|m| m.switches_neutral()))
         }
         "switched-rcd" => rcd().is_some_and(|r| r.poles != 1),
         "delayed" => rcd().is_some_and(|r| r.delayed),
