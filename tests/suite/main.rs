@@ -5,5 +5,7 @@ mod architecture;
 mod bad_knowledge;
 mod knowledge_on_sites;
 mod pipe;
+mod prompt;
 mod reference;
 mod source;
+mod terminal;

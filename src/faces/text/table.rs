@@ -201,13 +201,12 @@ mod tests {
             ]
         );
         assert_eq!(
-            shown(44),
+            shown(40),
             [
                 "supply neutral open, street   71  was 38",
                 "side",
                 "not on the list                2"
             ]
-            .map(str::to_owned)
         );
         assert_eq!(
             shown(30),
