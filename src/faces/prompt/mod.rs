@@ -3,11 +3,14 @@
 mod acts;
 mod complete;
 mod desk;
+mod hand;
 mod help;
 mod lists;
+mod open_points;
 mod path;
 mod points;
 mod progress;
+mod readings;
 mod repairs;
 mod screen;
 mod source;

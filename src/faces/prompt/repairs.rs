@@ -4,7 +4,7 @@ use super::super::text::{Meaning, Page, Text};
 use super::super::words::{result, sentence};
 use super::acts::usage;
 use super::desk::{Answer, Desk, Hand, MANY};
-use super::screen::limits;
+use super::hand::limits;
 use crate::faults::Fault;
 use crate::session::command;
 use crate::session::{ErrorCode, SessionError};
