@@ -1,6 +1,8 @@
 //! The serde forms of the knowledge files: what a fault kind, a check, a row of equipment says.
 //!
 //! Strings in braces are filled per place; which names may stand where is in [`super::words`].
+//!
+//! Long because it is every record of the knowledge files, with its meaning.
 
 use std::collections::BTreeMap;
 

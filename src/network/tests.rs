@@ -228,8 +228,8 @@ fn insulation_of_a_lifted_circuit_is_the_fault_alone() {
     };
     close(
         number(n.predict(&leak, &setup, &hookup, &ideal(), false)),
-        40e3,
-        1e-6,
+        40e3 + 2.0 * 20.0 * 7.41e-3,
+        1e-9,
     );
     let p = n.predict(&[], &setup, &hookup, &ideal(), false).unwrap();
     assert_eq!(p.outcome, Outcome::Number(f64::INFINITY));

@@ -7,6 +7,8 @@
 //! open, then across 1 kΩ; from the two a source resistance follows, and with it what a body takes
 //! (IEC 60479-1). A step is at risk where it raises a touch above the limits that it does not pass as
 //! found, where a conductor to be lifted carries current, or where a part called dead is not.
+//!
+//! Long because one simulation of a test is read from its first state to its last.
 
 use std::sync::Arc;
 

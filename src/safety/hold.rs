@@ -1,4 +1,6 @@
 //! Hold points: what must be done and seen before a reading may be taken, in its order (trade.md D.1).
+//!
+//! Long because the order of the hold points is one sequence.
 
 use super::Ground;
 use super::isolate::{isolate_text, isolates, isolation};

@@ -1,4 +1,6 @@
 //! The site as checked: every default filled in, every reference resolved.
+//!
+//! Long because it is every part of an installation, with its meaning.
 
 use serde::Serialize;
 

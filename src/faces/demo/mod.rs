@@ -36,7 +36,11 @@ const PAUSE: Duration = Duration::from_millis(900);
 ///
 /// # Errors
 /// A site that cannot be read, a fault that it cannot have, what the visit refuses, a closed output.
-pub fn run<W: Write>(knowledge: Arc<Knowledge>, ask: &DemoArgs, paper: &mut Paper<W>) -> Result<(), Trouble> {
+pub fn run<W: Write>(
+    knowledge: Arc<Knowledge>,
+    ask: &DemoArgs,
+    paper: &mut Paper<W>,
+) -> Result<(), Trouble> {
     let knowledge = &*knowledge;
     if ask.all {
         every_kind(knowledge, ask, paper)
