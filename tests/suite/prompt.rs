@@ -196,11 +196,18 @@ fn an_interview_writes_a_site_that_can_be_checked() {
 
     let mut again = straypath();
     again.args(["site", "new", "--out"]).arg(&out);
-    assert_eq!(fed(again, "").status.code(), Some(64), "a site file is not overwritten");
+    assert_eq!(
+        fed(again, "").status.code(),
+        Some(64),
+        "a site file is not overwritten"
+    );
 
     let early = folder.path().join("early.json");
     let mut short = straypath();
     short.args(["site", "new", "--out"]).arg(&early);
     assert_eq!(fed(short, "a name\n").status.code(), Some(64));
-    assert!(!early.exists(), "an interview that ends early writes nothing");
+    assert!(
+        !early.exists(),
+        "an interview that ends early writes nothing"
+    );
 }

@@ -2,9 +2,7 @@
 
 use super::super::text::wrap::FIRM;
 use super::super::text::{Cell, Meaning, Page, Table, Text};
-use super::super::words::{
-    Cause, action, in_100, list, of_100, sentence,
-};
+use super::super::words::{Cause, action, in_100, list, of_100, sentence};
 use super::desk::{Desk, MANY};
 use crate::session::Event;
 use crate::session::view::{OddsView, VerdictView};
