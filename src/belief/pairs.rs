@@ -73,69 +73,62 @@ impl Belief {
         any
     }
 
-    /// Estimates of the log joint of every pair that moves a reading: of each reading, what
-    /// either fault alone explains of it on average.
+    /// Estimates of the log joint of every pair in which the second fault helps: the first fault's own
+    /// joint, times the second's presence beside it, times what the second explains better of each
+    /// reading that it moves. A second fault that moves no reading is a copy of the first alone.
+    ///
+    /// It starts from the first's joint evidence, not from a product over readings: readings of one
+    /// installation lean on the same unknowns, and a product would count them as strangers.
     fn pair_bounds(&self) -> Vec<(f64, Vec<usize>)> {
-        let groups = self.groups.len();
-        if groups == 0 || !self.repaired.is_empty() {
+        if self.groups.is_empty() || !self.repaired.is_empty() {
             return Vec::new();
         }
-        let mean = |g: &[f64]| log_sum_exp(g) - ln(g.len().max(1) as f64);
-        let sound: Vec<f64> = self.reference.iter().map(|g| mean(g)).collect();
+        let mean = |g: &Vec<f64>| log_sum_exp(g) - ln(g.len().max(1) as f64);
         struct Single {
             index: usize,
             prior: f64,
-            complaint: f64,
-            best: Vec<f64>,
+            joint: f64,
+            mean: Vec<f64>,
             moved: Vec<bool>,
         }
         let singles: Vec<Single> = self
             .candidates
             .iter()
             .filter_map(|c| match &c.cause {
-                Cause::Faults(list) if list.len() == 1 => {
-                    let tops: Vec<f64> = c.cloud.groups.iter().map(|g| mean(g)).collect();
-                    let moved = c.moved.clone();
-                    Some(Single {
-                        index: list[0],
-                        prior: c.log_prior,
-                        complaint: c.log_complaint,
-                        best: tops,
-                        moved,
-                    })
-                }
+                Cause::Faults(list) if list.len() == 1 => Some(Single {
+                    index: list[0],
+                    prior: c.log_prior,
+                    joint: self.log_joint(c),
+                    mean: c.cloud.groups.iter().map(mean).collect(),
+                    moved: c.moved.clone(),
+                }),
                 _ => None,
             })
             .collect();
-        let floor = log_sum_exp(
-            &self
-                .candidates
-                .iter()
-                .map(|c| self.log_joint(c))
-                .collect::<Vec<_>>(),
-        ) + ln(1e-7);
+        let joints: Vec<f64> = self.candidates.iter().map(|c| self.log_joint(c)).collect();
+        let floor = log_sum_exp(&joints) + ln(1e-7);
+        let beside = |first: &Single, second: &Single| {
+            let gain: f64 = (0..first.mean.len())
+                .filter(|&g| second.moved[g])
+                .map(|g| (second.mean[g] - first.mean[g]).max(0.0))
+                .sum();
+            first.joint + second.prior + ln(BESIDE) + gain
+        };
+        let moves = |s: &Single| s.moved.iter().any(|m| *m);
         let mut out = Vec::new();
         for (i, a) in singles.iter().enumerate() {
-            if !a.moved.iter().any(|m| *m) {
-                continue;
-            }
             for b in &singles[i + 1..] {
-                if !b.moved.iter().any(|m| *m) {
-                    continue;
-                }
-                let complaint = log_sum_exp(&[a.complaint, b.complaint]).min(0.0);
-                let mut bound = a.prior + b.prior + ln(BESIDE) + complaint;
-                if bound < floor - 60.0 {
-                    continue;
-                }
-                bound += (0..groups)
-                    .map(|g| match (a.moved[g], b.moved[g]) {
-                        (true, true) => a.best[g].max(b.best[g]),
-                        (true, false) => a.best[g],
-                        (false, true) => b.best[g],
-                        (false, false) => sound[g],
-                    })
-                    .sum::<f64>();
+                let ab = if moves(b) {
+                    beside(a, b)
+                } else {
+                    f64::NEG_INFINITY
+                };
+                let ba = if moves(a) {
+                    beside(b, a)
+                } else {
+                    f64::NEG_INFINITY
+                };
+                let bound = ab.max(ba);
                 if bound > floor && self.model.space.compatible(a.index, b.index) {
                     out.push((bound, vec![a.index.min(b.index), a.index.max(b.index)]));
                 }
