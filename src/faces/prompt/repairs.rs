@@ -32,7 +32,12 @@ impl Desk {
             }
             _ => match &self.verdict {
                 Some(verdict) if !verdict.faults.is_empty() => verdict.faults.clone(),
-                _ => self.cause("1")?.1,
+                _ => {
+                    return Err(usage(
+                        "no verdict stands, and no cause was named",
+                        "name the cause by its number in `ranking`, such as: repair found 2",
+                    ));
+                }
             },
         };
         let note = (!rest.is_empty()).then(|| rest.join(" "));

@@ -4,6 +4,7 @@ use super::super::text::wrap::FIRM;
 use super::super::text::{Cell, Meaning, Page, Table, Text};
 use super::super::words::{Cause, action, in_100, list, of_100, sentence};
 use super::desk::{Desk, MANY};
+use crate::quantity::{Unit, format};
 use crate::session::Event;
 use crate::session::view::{OddsView, VerdictView};
 
@@ -23,7 +24,9 @@ impl Desk {
         let mut page = Page::new();
         page.extend(self.header());
         page.blank().extend(self.first());
-        if let Some(verdict) = &self.verdict {
+        // Nothing is closed while re-tests are owed.
+        let closes = |verdict: &&VerdictView| verdict.action == "nothing-found" && !self.session.owed().is_empty();
+        if let Some(verdict) = self.verdict.as_ref().filter(|verdict| !closes(verdict)) {
             page.blank().extend(self.decide(verdict));
         }
         page.blank().extend(self.next());
@@ -66,6 +69,31 @@ impl Desk {
 
     /// Orders before anything else.
     pub fn first(&self) -> Page {
+        let mut page = self.withdraw();
+        page.extend(self.orders_page());
+        page
+    }
+
+    /// What a stake has shown of the earth bar, while it stands.
+    fn withdraw(&self) -> Page {
+        let mut page = Page::new();
+        let safety = self.session.safety();
+        let limit = self.session.engine().knowledge().safety.touch_volts;
+        let Some(stake) = safety.stake().filter(|stake| stake.volts > limit && !safety.network_attended()) else {
+            return page;
+        };
+        let text = format!(
+            "{} from the earth bar to a stake (entry {}), above {}: withdraw, keep everyone off metal, and test nothing \
+             more live here until the supply has been made dead.",
+            format(stake.volts, Unit::Volt),
+            stake.entry,
+            format(limit, Unit::Volt)
+        );
+        page.hang(head("STOP"), MARGIN, Text::new().danger(text));
+        page
+    }
+
+    fn orders_page(&self) -> Page {
         let mut page = Page::new();
         let orders = self.orders();
         if orders.is_empty() {

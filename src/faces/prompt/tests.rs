@@ -95,6 +95,18 @@ fn danger_comes_first_and_stands_until_it_is_done() {
 }
 
 #[test]
+fn a_bar_that_stands_above_its_limit_stops_everything() {
+    let mut desk = desk();
+    let text = visit(
+        &mut desk,
+        "symptom tingle at water\ndone first\ndone 2\ndone 3\n47\nsure\n",
+        80,
+    );
+    assert!(text.contains("STOP    47 V from the earth bar to a stake"), "{text}");
+    assert!(text.contains("withdraw"), "{text}");
+}
+
+#[test]
 fn every_line_fits_and_nothing_is_called_safe() {
     for width in [60, 100] {
         let lines = "symptom rcd-trips at rcd1 when now-and-then\nadvise --more\nwhy\nranking\nevidence\npath\nplaces\nkit\n\
