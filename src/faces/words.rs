@@ -252,8 +252,13 @@ pub fn expected(expects: &ExpectView, unit: Unit) -> String {
     match expects {
         ExpectView::Number { p05, p50, p95, .. } => {
             // Far below the other end no instrument tells it from nothing.
-            let low = if p05.abs() < p95.abs() / 1000.0 { 0.0 } else { *p05 };
-            let (low, middle, high) = (rounded(low, unit), rounded(*p50, unit), rounded(*p95, unit));
+            let low = if p05.abs() < p95.abs() / 1000.0 {
+                0.0
+            } else {
+                *p05
+            };
+            let (low, middle, high) =
+                (rounded(low, unit), rounded(*p50, unit), rounded(*p95, unit));
             if low == high {
                 middle
             } else {
@@ -362,7 +367,12 @@ mod tests {
             p95: 2e9,
         };
         assert_eq!(expected(&expects, Unit::Ohm), "0 Ω to 2 GΩ");
-        let expects = ExpectView::Number { hypothesis: "x".into(), p05: 2e-5, p50: 1.0, p95: 53.4 };
+        let expects = ExpectView::Number {
+            hypothesis: "x".into(),
+            p05: 2e-5,
+            p50: 1.0,
+            p95: 53.4,
+        };
         assert_eq!(expected(&expects, Unit::Volt), "0 to 53 V");
     }
 }

@@ -25,7 +25,9 @@ impl Desk {
         page.extend(self.header());
         page.blank().extend(self.first());
         // Nothing is closed while re-tests are owed.
-        let closes = |verdict: &&VerdictView| verdict.action == "nothing-found" && !self.session.owed().is_empty();
+        let closes = |verdict: &&VerdictView| {
+            verdict.action == "nothing-found" && !self.session.owed().is_empty()
+        };
         if let Some(verdict) = self.verdict.as_ref().filter(|verdict| !closes(verdict)) {
             page.blank().extend(self.decide(verdict));
         }
@@ -79,7 +81,10 @@ impl Desk {
         let mut page = Page::new();
         let safety = self.session.safety();
         let limit = self.session.engine().knowledge().safety.touch_volts;
-        let Some(stake) = safety.stake().filter(|stake| stake.volts > limit && !safety.network_attended()) else {
+        let Some(stake) = safety
+            .stake()
+            .filter(|stake| stake.volts > limit && !safety.network_attended())
+        else {
             return page;
         };
         let text = format!(

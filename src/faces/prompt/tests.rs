@@ -102,7 +102,10 @@ fn a_bar_that_stands_above_its_limit_stops_everything() {
         "symptom tingle at water\ndone first\ndone 2\ndone 3\n47\nsure\n",
         80,
     );
-    assert!(text.contains("STOP    47 V from the earth bar to a stake"), "{text}");
+    assert!(
+        text.contains("STOP    47 V from the earth bar to a stake"),
+        "{text}"
+    );
     assert!(text.contains("withdraw"), "{text}");
 }
 
